@@ -1,0 +1,1 @@
+//! Groups of tokens to differences, overlap and spread.

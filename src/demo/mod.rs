@@ -1,0 +1,1 @@
+//! An invented survey, synthesised by a source-filter model, for a first run without data.

@@ -1,0 +1,1 @@
+//! Normalized vowels to ranked vowel identities with probabilities.

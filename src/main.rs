@@ -1,0 +1,5 @@
+//! The `isophone` binary.
+
+fn main() -> std::process::ExitCode {
+    isophone::cli::main()
+}

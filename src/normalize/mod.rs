@@ -1,0 +1,1 @@
+//! Observations of one speaker to values without the speaker's size.

@@ -1,0 +1,1 @@
+//! Published vowel tables and how to read them.

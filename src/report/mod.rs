@@ -1,0 +1,1 @@
+//! Findings to one self-contained HTML page; no arithmetic here.

@@ -1,0 +1,1 @@
+//! Signal analysis without phonetics: windows, spectra, prediction, roots, periodicity.

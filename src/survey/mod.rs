@@ -1,0 +1,1 @@
+//! The survey: what a folder holds, the plan, the run.

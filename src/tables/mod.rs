@@ -1,0 +1,1 @@
+//! The rows and columns of the tables the program reads and writes.
