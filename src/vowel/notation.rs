@@ -1,0 +1,73 @@
+//! The notations labels come in, and which of them a set of labels is written in.
+
+use super::{LabelKind, arpabet, ipa};
+
+/// How a survey writes its labels.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub enum Notation {
+    /// IPA symbols.
+    Ipa,
+    /// ARPABET, upper or lower case, stress digits allowed; also the lower-case phone set of
+    /// hand-aligned read sentences (`ux`, `ax-h`, `pcl`, `h#` …).
+    Arpabet,
+}
+
+impl Notation {
+    /// Reads one label.
+    ///
+    /// An empty label is no vowel. Nothing is guessed: a label the notation does not define is
+    /// [`LabelKind::Unknown`], for the caller to count and report.
+    ///
+    /// ```
+    /// use isophone::vowel::{LabelKind, Notation, Stress, Vowel};
+    /// let read = Notation::Arpabet.read("IY1");
+    /// assert_eq!(read, LabelKind::Vowel(Vowel::from_ipa("i"), Stress::Primary));
+    /// assert_eq!(Notation::Arpabet.read("pcl"), LabelKind::NotVowel);
+    /// ```
+    pub fn read(&self, label: &str) -> LabelKind {
+        let label = label.trim();
+        if label.is_empty() {
+            return LabelKind::NotVowel;
+        }
+        match self {
+            Self::Ipa => ipa::read(label),
+            Self::Arpabet => arpabet::read(label),
+        }
+    }
+
+    /// The notation that knows most of these labels; IPA where several know as many.
+    ///
+    /// For surveys that do not say how they write their labels. The labels are taken with their
+    /// repetitions, so that common ones count for more.
+    pub fn guess<'a>(labels: impl IntoIterator<Item = &'a str> + Clone) -> Self {
+        let known = |notation: &Self| {
+            labels
+                .clone()
+                .into_iter()
+                .filter(|label| notation.read(label) != LabelKind::Unknown)
+                .count()
+        };
+        let mut best = Self::Ipa;
+        let mut most = known(&best);
+        for notation in [Self::Arpabet] {
+            let count = known(&notation);
+            if count > most {
+                (best, most) = (notation, count);
+            }
+        }
+        best
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn labels_tell_their_notation() {
+        assert_eq!(Notation::guess(["i", "ɛ", "ɝ", "u"]), Notation::Ipa);
+        assert_eq!(Notation::guess(["h#", "sh", "iy", "k"]), Notation::Arpabet);
+        assert_eq!(Notation::guess(["IY1", "ER0", "SIL"]), Notation::Arpabet);
+        assert_eq!(Notation::guess([]), Notation::Ipa);
+    }
+}
