@@ -26,7 +26,7 @@ mod tracks;
 pub use cell::{decimals, format_number, guard, round_to, unguard};
 pub use column::{Column, Kind, describe};
 pub use error::TableError;
-pub use observations::{ObservationColumns, ObservationTable};
+pub use observations::{ObservationColumns, ObservationTable, UnknownName};
 pub use tokens::{
     ColumnGroups, IdentifiedCells, NormalizedCells, ReadingCells, TokenRow, TokenTable,
     TokenWriter, token_columns,

@@ -41,13 +41,13 @@ impl ObservationColumns {
         }
     }
 
-    /// Takes `column` for `name`; gives the names there are when `name` is none of them.
+    /// Takes `column` for `name`.
     ///
     /// # Errors
-    /// [`Self::NAMES`].
-    pub fn rename(&mut self, name: &str, column: &str) -> Result<(), [&'static str; 11]> {
+    /// [`UnknownName`] where `name` is none of [`Self::NAMES`].
+    pub fn rename(&mut self, name: &str, column: &str) -> Result<(), UnknownName> {
         if !Self::NAMES.contains(&name) {
-            return Err(Self::NAMES);
+            return Err(UnknownName(name.to_owned()));
         }
         self.renamed.insert(name.to_owned(), column.to_owned());
         Ok(())
@@ -69,6 +69,11 @@ impl Default for ObservationColumns {
         Self::as_named()
     }
 }
+
+/// A name no column can stand for.
+#[derive(Debug, Clone, PartialEq, Eq, thiserror::Error)]
+#[error("no column is called `{0}`; expected one of `{names}`", names = ObservationColumns::NAMES.join(", "))]
+pub struct UnknownName(pub String);
 
 /// A table with a row per vowel token: its cells as they came, and what they say.
 #[derive(Debug, Clone, PartialEq)]
