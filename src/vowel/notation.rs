@@ -47,15 +47,11 @@ impl Notation {
                 .filter(|label| notation.read(label) != LabelKind::Unknown)
                 .count()
         };
-        let mut best = Self::Ipa;
-        let mut most = known(&best);
-        for notation in [Self::Arpabet] {
-            let count = known(&notation);
-            if count > most {
-                (best, most) = (notation, count);
-            }
+        if known(&Self::Arpabet) > known(&Self::Ipa) {
+            Self::Arpabet
+        } else {
+            Self::Ipa
         }
-        best
     }
 }
 
