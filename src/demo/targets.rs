@@ -2,8 +2,10 @@
 
 use thiserror::Error;
 
-/// The published averages at 20, 50 and 80 %, compiled in.
-const TABLE: &str = include_str!("../../reference-tables/hillenbrand-1995-dynamics-20-50-80.csv");
+use crate::norms;
+
+/// The published averages at 20, 50 and 80 %.
+const TABLE: &str = "hillenbrand-1995-movement";
 
 /// A vowel of the invented survey and the word it is said in.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -112,9 +114,9 @@ pub(super) struct Targets {
 /// Why the table compiled into the program cannot be used.
 #[derive(Debug, Error)]
 pub enum TargetsError {
-    /// A row of the table is not what it should be.
+    /// The table is not there.
     #[error("the built-in table of averages cannot be read")]
-    Row(#[from] csv::Error),
+    Table,
     /// A value is missing.
     #[error("the built-in table of averages has no value for `{vowel}` of `{group}`")]
     Missing {
@@ -133,42 +135,30 @@ impl Targets {
     }
 }
 
-#[derive(serde::Deserialize)]
-struct Row {
-    group: String,
-    vowel_ipa: String,
-    point: String,
-    #[serde(rename = "F1")]
-    f1: f64,
-    #[serde(rename = "F2")]
-    f2: f64,
-    #[serde(rename = "F3")]
-    f3: f64,
-}
-
 /// Reads the built-in table.
 ///
 /// # Errors
 /// [`TargetsError`] where the table lacks a value.
 pub(super) fn targets() -> Result<Targets, TargetsError> {
-    let mut reader = csv::ReaderBuilder::new()
-        .comment(Some(b'#'))
-        .from_reader(TABLE.as_bytes());
-    let rows: Vec<Row> = reader.deserialize().collect::<Result<_, _>>()?;
+    let table = norms::shipped(TABLE).ok_or(TargetsError::Table)?;
     let mut paths = Vec::new();
     for group in Group::ALL {
         for vowel in VOWELS {
             let mut path = [[0.0; 3]; 3];
-            for (at, point) in path.iter_mut().zip(["20%", "50%", "80%"]) {
-                let row = rows.iter().find(|r| {
-                    r.group == group.in_table() && r.vowel_ipa == vowel.ipa && r.point == point
+            for (at, point) in path.iter_mut().zip([0.2, 0.5, 0.8]) {
+                let row = table.rows.iter().find(|r| {
+                    r.group == group.in_table()
+                        && r.vowel.ipa() == vowel.ipa
+                        && r.proportion == Some(point)
                 });
                 let missing = TargetsError::Missing {
                     vowel: vowel.ipa,
                     group: group.in_table(),
                 };
-                let row = row.ok_or(missing)?;
-                *at = [row.f1, row.f2, row.f3];
+                match row.map(|row| row.formant_hz) {
+                    Some([Some(f1), Some(f2), Some(f3)]) => *at = [f1, f2, f3],
+                    _ => return Err(missing),
+                }
             }
             paths.push(path);
         }
@@ -183,7 +173,7 @@ mod tests {
     #[test]
     fn the_table_gives_what_is_printed_in_it() {
         let targets = targets().unwrap();
-        // Rows `men,i,heed,20%` and `children,ɝ,heard,80%` of the table.
+        // Rows `men,i,heed,0.2` and `children,ɝ,heard,0.8` of the table.
         assert_eq!(targets.path(Group::Men, 0)[0], [346.4, 2311.6, 3009.7]);
         assert_eq!(
             targets.path(Group::Children, 11)[2],
