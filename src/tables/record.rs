@@ -4,6 +4,7 @@ use std::collections::BTreeSet;
 
 use super::cell::Cell;
 use super::error::TableError;
+use crate::segments::{LineCounter, guess_delimiter};
 
 /// A table taken apart into cells: the header, then rows of as many cells.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -26,7 +27,9 @@ impl Records {
         let mut reader = csv::ReaderBuilder::new()
             .has_headers(false)
             .flexible(true)
+            .delimiter(guess_delimiter(bytes))
             .from_reader(bytes);
+        let mut lines = LineCounter::new(bytes);
         let mut records = reader.records();
         let header: Vec<String> = match records.next() {
             None => {
@@ -49,12 +52,12 @@ impl Records {
             }
         }
         let mut rows = Vec::new();
-        let mut lines = Vec::new();
+        let mut row_lines = Vec::new();
         for record in records {
             let record = record.map_err(|error| TableError::NotUtf8 {
-                line: error.position().map_or(0, csv::Position::line),
+                line: lines.line_of(error.position()),
             })?;
-            let line = record.position().map_or(0, csv::Position::line);
+            let line = lines.line_of(record.position());
             if record.len() != header.len() {
                 return Err(TableError::Ragged {
                     line,
@@ -63,12 +66,12 @@ impl Records {
                 });
             }
             rows.push(record);
-            lines.push(line);
+            row_lines.push(line);
         }
         Ok(Self {
             header,
             rows,
-            lines,
+            lines: row_lines,
         })
     }
 
