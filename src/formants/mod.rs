@@ -21,6 +21,8 @@ pub enum Unmeasured {
     Unvoiced,
     /// The span lies (partly) outside its recording.
     OutsideRecording,
+    /// The recording, or the channel asked for, could not be read.
+    NoRecording,
     /// No hypothesis gave a believable set of resonances.
     NoResonances,
 }
@@ -33,6 +35,7 @@ impl Unmeasured {
             Self::Silent => "silent",
             Self::Unvoiced => "unvoiced",
             Self::OutsideRecording => "outside the recording",
+            Self::NoRecording => "the recording could not be read",
             Self::NoResonances => "no resonances",
         }
     }

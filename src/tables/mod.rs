@@ -1,12 +1,14 @@
 //! The rows and columns of the tables the program reads and writes.
 //!
-//! Three views of a CSV table live here:
+//! Four views of a CSV table live here:
 //!
 //! - [`TokenTable`] and [`TrackTable`] are the program's own tables, typed; `tokens.csv` and
 //!   `tracks.csv` are written from them and read back to exactly the same rows.
 //! - [`ObservationTable`] is any table with a row per vowel token, ours or somebody else's, whose
 //!   columns can be named. Its cells are kept as they came, so that the verbs that add columns
 //!   (`normalize`, `identify`) give every other column back untouched.
+//!
+//! - [`SpeakerTable`] is a survey's own table of its speakers, with whatever columns it has.
 //!
 //! Everything is UTF-8, comma-separated, RFC 4180 quoting, one header line, `\n` at line ends on
 //! writing; an empty cell is a missing value. [`describe`] gives the W3C CSVW description that is
@@ -20,6 +22,7 @@ mod column;
 mod error;
 mod observations;
 mod record;
+mod speakers;
 mod tokens;
 mod tracks;
 
@@ -27,6 +30,7 @@ pub use cell::{decimals, format_number, guard, round_to, unguard};
 pub use column::{Column, Kind, describe};
 pub use error::TableError;
 pub use observations::{ObservationColumns, ObservationTable, UnknownName};
+pub use speakers::SpeakerTable;
 pub use tokens::{
     ColumnGroups, IdentifiedCells, NormalizedCells, ReadingCells, TokenRow, TokenTable,
     TokenWriter, token_columns,

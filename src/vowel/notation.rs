@@ -13,6 +13,23 @@ pub enum Notation {
 }
 
 impl Notation {
+    /// The notations by the names a survey file and the options know them by.
+    pub const NAMED: [(&'static str, Self); 2] = [("ipa", Self::Ipa), ("arpabet", Self::Arpabet)];
+
+    /// The notation of this name.
+    pub fn named(name: &str) -> Option<Self> {
+        let (_, notation) = Self::NAMED.into_iter().find(|(known, _)| *known == name)?;
+        Some(notation)
+    }
+
+    /// The name of the notation.
+    pub fn name(&self) -> &'static str {
+        match self {
+            Self::Ipa => "ipa",
+            Self::Arpabet => "arpabet",
+        }
+    }
+
     /// Reads one label.
     ///
     /// An empty label is no vowel. Nothing is guessed: a label the notation does not define is
