@@ -28,7 +28,7 @@ pub use village::{Person, PutIn, VILLAGES};
 pub const RATE_HZ: u32 = 16_000;
 
 /// How often every person says every word.
-pub const TIMES: usize = 5;
+pub const TIMES: usize = 6;
 
 /// The seed `isophone demo` uses: any would do, this one is the year Rosenberg's pulses were printed.
 pub const SEED: u64 = 1971;
