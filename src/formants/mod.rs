@@ -3,22 +3,65 @@
 //! [`analyse`] weighs many hypotheses for one span; choosing between them takes all tokens of a
 //! speaker and is the work of [`crate::tokens`].
 
-use crate::audio::Waveform;
+pub mod consensus;
+mod grid;
+pub mod pitch;
+
+use crate::audio::{ANALYSIS_RATE_HZ, Waveform};
 use crate::segments::VowelSpan;
+use consensus::Hypothesis;
+use pitch::{PitchCandidate, PitchSignal};
+
+/// What holds for a whole recording and bears on every reading in it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Conditions {
+    /// Upper edge of what the recording holds, in hertz.
+    pub band_edge_hz: f64,
+}
+
+impl Conditions {
+    /// Finds the conditions of one waveform.
+    pub fn find(waveform: &Waveform) -> Self {
+        Self {
+            band_edge_hz: waveform.band_edge_hz,
+        }
+    }
+}
+
+/// Points of a token at which it is analysed, as proportions of its duration: 0.1 to 0.9 in steps
+/// of 0.05.
+pub const POINTS: usize = 17;
+
+/// The proportion of the duration of analysis point `index`.
+pub fn proportion(index: usize) -> f64 {
+    0.1 + 0.05 * index as f64
+}
 
 /// All that was found in one span before the speaker is known.
 #[derive(Debug, Clone)]
-pub struct SpanAnalysis {}
+pub struct SpanAnalysis {
+    /// One entry per analysis point.
+    pub points: Vec<PointAnalysis>,
+}
+
+/// All that was found at one moment.
+#[derive(Debug, Clone)]
+pub struct PointAnalysis {
+    /// Seconds from the start of the recording.
+    pub time_s: f64,
+    /// Readings of the resonances, the most believed first; may be empty.
+    pub hypotheses: Vec<Hypothesis>,
+    /// Candidates for the fundamental frequency, the strongest first; may be empty.
+    pub pitch: Vec<PitchCandidate>,
+}
 
 /// Why a span could not be analysed at all.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 pub enum Unmeasured {
-    /// Shorter than the shortest analysis frame.
+    /// Shorter than [`SHORTEST_S`].
     TooShort,
     /// No energy.
     Silent,
-    /// No voicing found anywhere in the span.
-    Unvoiced,
     /// The span lies (partly) outside its recording.
     OutsideRecording,
     /// The recording, or the channel asked for, could not be read.
@@ -33,7 +76,6 @@ impl Unmeasured {
         match self {
             Self::TooShort => "too short",
             Self::Silent => "silent",
-            Self::Unvoiced => "unvoiced",
             Self::OutsideRecording => "outside the recording",
             Self::NoRecording => "the recording could not be read",
             Self::NoResonances => "no resonances",
@@ -41,10 +83,56 @@ impl Unmeasured {
     }
 }
 
+/// The shortest span that is measured, in seconds: two periods of a low voice.
+pub const SHORTEST_S: f64 = 0.020;
+
+/// Samples of a span below this root mean square (-90 dB of full scale) are silence.
+const SILENCE_RMS: f64 = 3.2e-5;
+
 /// Analyses one span of a recording.
 ///
 /// # Errors
 /// [`Unmeasured`] where the span cannot be analysed.
-pub fn analyse(_waveform: &Waveform, _span: &VowelSpan) -> Result<SpanAnalysis, Unmeasured> {
-    Err(Unmeasured::NoResonances)
+pub fn analyse(
+    waveform: &Waveform,
+    conditions: &Conditions,
+    span: &VowelSpan,
+) -> Result<SpanAnalysis, Unmeasured> {
+    let samples = &waveform.samples;
+    // Labels are rounded to the millisecond: half of one past the end is no error.
+    if span.start_s < 0.0 || span.end_s > waveform.duration_s() + 0.0005 {
+        return Err(Unmeasured::OutsideRecording);
+    }
+    if span.duration_s() < SHORTEST_S {
+        return Err(Unmeasured::TooShort);
+    }
+    let first = (span.start_s * ANALYSIS_RATE_HZ).round() as usize;
+    let last = ((span.end_s * ANALYSIS_RATE_HZ).round() as usize).min(samples.len());
+    let energy: f64 = samples[first..last]
+        .iter()
+        .map(|&x| f64::from(x) * f64::from(x))
+        .sum();
+    if energy <= SILENCE_RMS * SILENCE_RMS * (last - first) as f64 {
+        return Err(Unmeasured::Silent);
+    }
+    let mut grid = grid::Grid::new();
+    let pitch = PitchSignal::new(samples, first, last);
+    let mut readings = Vec::with_capacity(grid::READINGS);
+    let points: Vec<PointAnalysis> = (0..POINTS)
+        .map(|i| {
+            let time_s = span.start_s + proportion(i) * span.duration_s();
+            let centre = (time_s * ANALYSIS_RATE_HZ).round() as usize;
+            readings.clear();
+            grid.read(samples, centre, conditions.band_edge_hz, &mut readings);
+            PointAnalysis {
+                time_s,
+                hypotheses: consensus::gather(&readings),
+                pitch: pitch.candidates(centre),
+            }
+        })
+        .collect();
+    if points.iter().all(|p| p.hypotheses.is_empty()) {
+        return Err(Unmeasured::NoResonances);
+    }
+    Ok(SpanAnalysis { points })
 }

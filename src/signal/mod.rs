@@ -1,1 +1,6 @@
-//! Signal analysis without phonetics: windows, spectra, prediction, roots, periodicity.
+//! Signal analysis without phonetics: windows, spectra, prediction, roots.
+
+pub mod prediction;
+pub mod roots;
+pub mod spectrum;
+pub mod window;

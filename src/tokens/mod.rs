@@ -1,6 +1,13 @@
 //! All spans of one speaker, read together, to measured tokens.
 
-use crate::formants::{SpanAnalysis, Unmeasured};
+mod path;
+mod reading;
+mod size;
+mod voice;
+
+pub use reading::read_speaker;
+
+use crate::formants::Unmeasured;
 use crate::segments::VowelSpan;
 use crate::vowel::Vowel;
 
@@ -73,19 +80,6 @@ impl Doubt {
             Self::Outlier => "unlike the speaker's other tokens".to_owned(),
         }
     }
-}
-
-/// Reads all spans of one speaker together; the result keeps the order of the input.
-///
-/// The label only groups the speaker's tokens; no published norm enters.
-pub fn read_speaker(spans: Vec<(VowelSpan, Result<SpanAnalysis, Unmeasured>)>) -> Vec<Token> {
-    spans
-        .into_iter()
-        .map(|(span, _)| Token {
-            span,
-            reading: Err(Unmeasured::NoResonances),
-        })
-        .collect()
 }
 
 /// What later stages need of one vowel token, whether this program measured it or a table gives it.

@@ -1,0 +1,166 @@
+//! All tokens of one speaker read together: size and pitch range from all of them, then every
+//! token again in their light, until nothing changes.
+
+use super::path::most_believable;
+use super::size::Size;
+use super::voice::contour;
+use super::{Doubt, FormantPoint, PROPORTIONS, Reading, Token, TrackPoint};
+use crate::formants::consensus::Hypothesis;
+use crate::formants::{SpanAnalysis, Unmeasured, proportion};
+use crate::segments::VowelSpan;
+
+/// Weight of the vowel-blind cloud against the agreement of the analyses.
+const SIZE_WEIGHT: f64 = 0.15;
+
+/// Rounds of reading; the size moves by less than 0.001 after the second on `hvd-words`.
+const ROUNDS: usize = 3;
+
+/// Reads all spans of one speaker together; the result keeps the order of the input.
+///
+/// The label only groups the speaker's tokens; no published norm for any vowel enters.
+pub fn read_speaker(spans: Vec<(VowelSpan, Result<SpanAnalysis, Unmeasured>)>) -> Vec<Token> {
+    let analyses: Vec<&SpanAnalysis> = spans.iter().filter_map(|(_, a)| a.as_ref().ok()).collect();
+    let median_hz = median_pitch(&analyses);
+    let mut size = Size::default();
+    let mut paths = Vec::new();
+    for _ in 0..ROUNDS {
+        paths = analyses
+            .iter()
+            .map(|a| most_believable(a, |h| belief(h, size)))
+            .collect::<Vec<_>>();
+        size = Size::of(analyses.iter().zip(&paths).flat_map(|(analysis, path)| {
+            analysis
+                .points
+                .iter()
+                .zip(path)
+                .filter_map(|(point, chosen)| {
+                    chosen.map(|c| point.hypotheses[c].ln_hz.map(f64::from))
+                })
+        }));
+    }
+    let mut paths = paths.into_iter();
+    spans
+        .into_iter()
+        .map(|(span, analysis)| {
+            let reading = analysis.and_then(|analysis| {
+                let path = paths.next().ok_or(Unmeasured::NoResonances)?;
+                read_token(&span, &analysis, &path, median_hz)
+            });
+            Token { span, reading }
+        })
+        .collect()
+}
+
+fn belief(h: &Hypothesis, size: Size) -> f64 {
+    f64::from(h.belief) + SIZE_WEIGHT * size.belief(h.ln_hz.map(f64::from))
+}
+
+/// The median over tokens of each token's median F0, read without knowing the speaker.
+fn median_pitch(analyses: &[&SpanAnalysis]) -> Option<f64> {
+    let mut medians: Vec<f64> = analyses
+        .iter()
+        .filter_map(|a| {
+            let mut values: Vec<f64> = contour(a, None).into_iter().flatten().collect();
+            median(&mut values)
+        })
+        .collect();
+    median(&mut medians)
+}
+
+fn median(values: &mut [f64]) -> Option<f64> {
+    if values.is_empty() {
+        return None;
+    }
+    values.sort_by(f64::total_cmp);
+    let n = values.len();
+    Some(0.5 * (values[(n - 1) / 2] + values[n / 2]))
+}
+
+fn read_token(
+    span: &VowelSpan,
+    analysis: &SpanAnalysis,
+    path: &[Option<usize>],
+    median_hz: Option<f64>,
+) -> Result<Reading, Unmeasured> {
+    let f0 = contour(analysis, median_hz);
+    let points: Vec<FormantPoint> = analysis
+        .points
+        .iter()
+        .zip(path)
+        .zip(&f0)
+        .map(|((point, chosen), &f0_hz)| {
+            let mut out = FormantPoint {
+                f0_hz,
+                ..FormantPoint::default()
+            };
+            if let Some(h) = chosen.map(|c| &point.hypotheses[c]) {
+                for k in 0..3 {
+                    let hz = f64::from(h.ln_hz[k]).exp();
+                    out.formant_hz[k] = Some(hz);
+                    out.bandwidth_hz[k] = Some(f64::from(h.bandwidth_hz[k]));
+                    // A first organ's error bar: the spread of the agreeing analyses (1.48 times
+                    // the median deviation is a standard deviation) and a tenth of F0 for the
+                    // harmonic spacing (Vallabha & Tuller 2002).
+                    let spread = 1.48 * f64::from(h.spread[k]) * hz;
+                    let spacing = 0.05 * f0_hz.unwrap_or(0.0);
+                    out.sd_hz[k] = Some((spread * spread + spacing * spacing + 25.0).sqrt());
+                }
+                out.formant_hz[3] = Some(f64::from(h.f4_hz)).filter(|f| f.is_finite());
+            }
+            out
+        })
+        .collect();
+    let track: Vec<TrackPoint> = PROPORTIONS
+        .iter()
+        .map(|&p| {
+            let index = (0..points.len())
+                .min_by(|&a, &b| {
+                    (proportion(a) - p)
+                        .abs()
+                        .total_cmp(&(proportion(b) - p).abs())
+                })
+                .unwrap_or(0);
+            TrackPoint {
+                proportion: p,
+                time_s: analysis.points[index].time_s,
+                point: points[index],
+            }
+        })
+        .collect();
+    let steady = steadiest(&points).ok_or(Unmeasured::NoResonances)?;
+    let value = points[steady];
+    let mut doubts = Vec::new();
+    if let (Some(f0), Some(f1)) = (value.f0_hz, value.formant_hz[0])
+        && f0 > 0.8 * f1
+    {
+        doubts.push(Doubt::HighPitch);
+    }
+    let _ = span;
+    Ok(Reading {
+        at_s: analysis.points[steady].time_s,
+        value,
+        track,
+        doubts,
+    })
+}
+
+/// The point between 20 and 80 % around which ln F1 and ln F2 move least over a fifth of the
+/// duration, the one nearer the middle of two alike.
+fn steadiest(points: &[FormantPoint]) -> Option<usize> {
+    let ln = |i: usize, k: usize| points[i].formant_hz[k].map(f64::ln);
+    let movement = |i: usize| -> Option<f64> {
+        let mut sum = 0.0;
+        for j in i - 2..i + 2 {
+            for k in 0..2 {
+                sum += (ln(j + 1, k)? - ln(j, k)?).abs();
+            }
+        }
+        Some(sum)
+    };
+    let middle = points.len() / 2;
+    (2..points.len() - 2)
+        .filter_map(|i| movement(i).map(|m| (i, m + 0.002 * i.abs_diff(middle) as f64)))
+        .min_by(|a, b| a.1.total_cmp(&b.1))
+        .map(|(i, _)| i)
+        .or_else(|| points.iter().position(|p| p.formant_hz[0].is_some()))
+}
