@@ -68,23 +68,54 @@ pub fn create_folder(path: &Path) -> Result<(), FileError> {
     fs::create_dir_all(path).map_err(|source| FileError::new(path, "make the folder", source))
 }
 
-/// Names of the files in a folder, sorted; folders and names that are not UTF-8 are left out.
+/// Names of the files in a folder and its folders, sorted, as paths from it with `/` between.
+///
+/// Hidden files and folders (their name begins with a dot) and names that are not UTF-8 are left
+/// out.
 ///
 /// # Errors
 /// [`FileError`] with the path.
-pub fn list(folder: &Path) -> Result<Vec<String>, FileError> {
+pub fn list_all(folder: &Path) -> Result<Vec<String>, FileError> {
+    let mut names = Vec::new();
+    list_into(folder, "", &mut names)?;
+    names.sort();
+    Ok(names)
+}
+
+/// Names of what stands directly in a folder, sorted, folders with a `/` at the end.
+///
+/// # Errors
+/// [`FileError`] with the path.
+pub fn list_top(folder: &Path) -> Result<Vec<String>, FileError> {
     let wrap = |source| FileError::new(folder, "list it", source);
     let mut names = Vec::new();
     for entry in fs::read_dir(folder).map_err(wrap)? {
         let entry = entry.map_err(wrap)?;
-        if entry.path().is_file()
-            && let Ok(name) = entry.file_name().into_string()
-        {
-            names.push(name);
-        }
+        let mark = if entry.path().is_dir() { "/" } else { "" };
+        names.push(format!("{}{mark}", entry.file_name().to_string_lossy()));
     }
     names.sort();
     Ok(names)
+}
+
+fn list_into(folder: &Path, prefix: &str, names: &mut Vec<String>) -> Result<(), FileError> {
+    let wrap = |source| FileError::new(folder, "list it", source);
+    for entry in fs::read_dir(folder).map_err(wrap)? {
+        let entry = entry.map_err(wrap)?;
+        let Ok(name) = entry.file_name().into_string() else {
+            continue;
+        };
+        if name.starts_with('.') {
+            continue;
+        }
+        // A link to a folder is not followed: it could lead back here.
+        if entry.file_type().map_err(wrap)?.is_dir() {
+            list_into(&entry.path(), &format!("{prefix}{name}/"), names)?;
+        } else if entry.path().is_file() {
+            names.push(format!("{prefix}{name}"));
+        }
+    }
+    Ok(())
 }
 
 /// Replaces a file whole: a reader sees the old bytes or the new ones, never a part.
@@ -194,7 +225,20 @@ mod tests {
         assert_eq!(read(&path).expect("read"), b"old");
         write(&path, b"new").expect("written");
         assert_eq!(read(&path).expect("read"), b"new");
-        assert_eq!(list(folder.path()).expect("listed"), ["t.csv"]);
+        let left = fs::read_dir(folder.path()).expect("listed").count();
+        assert_eq!(left, 1, "nothing unfinished stays");
+    }
+
+    #[test]
+    fn folders_are_listed_in_order_without_what_is_hidden() {
+        let folder = tempfile::tempdir().expect("a folder");
+        create_folder(&folder.path().join("b")).expect("made");
+        create_folder(&folder.path().join(".git")).expect("made");
+        for name in ["c.wav", "b/a.wav", "a.wav", ".x", ".git/y"] {
+            write(&folder.path().join(name), b"").expect("written");
+        }
+        let names = list_all(folder.path()).expect("listed");
+        assert_eq!(names, ["a.wav", "b/a.wav", "c.wav"]);
     }
 
     #[test]

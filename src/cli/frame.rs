@@ -5,6 +5,7 @@ use std::io::{self, IsTerminal, Write};
 use std::path::Path;
 
 use crate::files::FileError;
+use crate::survey::{Finding, Weight};
 use crate::tables::TableError;
 
 /// How a verb ended that could do its work.
@@ -97,6 +98,15 @@ impl Voice {
     /// Says what was left out or is doubtful, with a hint where there is one.
     pub(super) fn warning(&self, text: impl fmt::Display, hint: Option<&str>) {
         self.marked("warning", "33", &text.to_string(), hint);
+    }
+
+    /// Says what was found in a survey.
+    pub(super) fn finding(&self, finding: &Finding) {
+        let (mark, colour) = match finding.kind.weight() {
+            Weight::LeftOut => ("left out", "33"),
+            Weight::Notice => ("note", "36"),
+        };
+        self.marked(mark, colour, &finding.to_string(), Some(&finding.hint));
     }
 
     /// Says why the work could not be done.

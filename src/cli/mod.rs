@@ -7,9 +7,12 @@ mod compare;
 mod demo;
 mod frame;
 mod identify;
+mod measure;
 mod normalize;
 mod norms;
 mod report;
+mod run;
+mod survey;
 mod train;
 
 use std::process::ExitCode;
@@ -44,19 +47,14 @@ struct Arguments {
 
 #[derive(Debug, Subcommand)]
 enum Verb {
-    /// Takes the size of each speaker out of a table of vowels.
+    Run(run::RunArguments),
+    Measure(measure::MeasureArguments),
     Normalize(normalize::NormalizeArguments),
-    /// Trains a model on a table of labelled vowels and tests it on speakers it has not seen.
     Train(train::TrainArguments),
-    /// Says which vowels the rows of a normalized table are, and how probably.
     Identify(identify::IdentifyArguments),
-    /// Compares groups of speakers, vowel by vowel.
     Compare(compare::CompareArguments),
-    /// Lists and shows the published vowel tables.
     Norms(norms::NormsArguments),
-    /// Makes the page to read from a run.
     Report(report::ReportArguments),
-    /// Invents a survey, synthesises it, runs it, and says what was found beside what was put in.
     Demo(demo::DemoArguments),
 }
 
@@ -78,6 +76,8 @@ pub fn main() -> ExitCode {
         }
     }
     let outcome = match &arguments.verb {
+        Verb::Run(arguments) => run::execute(arguments, &voice),
+        Verb::Measure(arguments) => measure::execute(arguments, &voice),
         Verb::Normalize(arguments) => normalize::execute(arguments, &voice),
         Verb::Train(arguments) => train::execute(arguments, &voice),
         Verb::Identify(arguments) => identify::execute(arguments, &voice),
