@@ -23,6 +23,7 @@ mod error;
 mod observations;
 mod record;
 mod speakers;
+mod token_row;
 mod tokens;
 mod tracks;
 
@@ -31,8 +32,8 @@ pub use column::{Column, Kind, describe};
 pub use error::TableError;
 pub use observations::{ObservationColumns, ObservationTable, UnknownName};
 pub use speakers::SpeakerTable;
-pub use tokens::{
-    ColumnGroups, IdentifiedCells, NormalizedCells, ReadingCells, TokenRow, TokenTable,
-    TokenWriter, token_columns,
+pub use token_row::{
+    ColumnGroups, IdentifiedCells, NormalizedCells, ReadingCells, TokenRow, token_columns,
 };
+pub use tokens::{TokenTable, TokenWriter};
 pub use tracks::{TrackRow, TrackTable, TrackWriter, track_columns};

@@ -250,7 +250,7 @@ impl ObservationTable {
 
 #[cfg(test)]
 mod tests {
-    use super::super::tokens::NormalizedCells;
+    use super::super::token_row::NormalizedCells;
     use super::*;
 
     const FOREIGN: &str = "group,talker,ipa,note,f0,f1,f2,f3\n\

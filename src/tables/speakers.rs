@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 
 use super::error::TableError;
 use super::record::Records;
-use super::tokens::is_own_column;
+use super::token_row::is_own_column;
 
 /// The speakers of a survey and what is known of them.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]
