@@ -32,6 +32,8 @@ pub enum FindingKind {
     SpeakerColumnClash,
     /// A speaker could not be normalized.
     SpeakerNotNormalized,
+    /// A speaker lacks vowels that others have, and the normalization needs the whole set.
+    SpeakerLacksVowels,
     /// Tokens could not be identified.
     NotIdentified,
 }
@@ -62,6 +64,7 @@ impl FindingKind {
             Self::SpeakerRepeated => "speaker repeated",
             Self::SpeakerColumnClash => "speaker column left out",
             Self::SpeakerNotNormalized => "speaker not normalized",
+            Self::SpeakerLacksVowels => "speaker without the whole vowel set",
             Self::NotIdentified => "not identified",
         }
     }
@@ -69,9 +72,11 @@ impl FindingKind {
     /// Whether something was left out.
     pub fn weight(self) -> Weight {
         match self {
-            Self::RecordingCutShort | Self::RecordingUnlabelled | Self::NoSpeakerTable => {
-                Weight::Notice
-            }
+            Self::RecordingCutShort
+            | Self::RecordingUnlabelled
+            | Self::NoSpeakerTable
+            | Self::SpeakerLacksVowels
+            | Self::NotIdentified => Weight::Notice,
             _ => Weight::LeftOut,
         }
     }

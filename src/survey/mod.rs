@@ -13,6 +13,7 @@ mod plan;
 mod record;
 mod run;
 mod settings;
+mod stages;
 
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};

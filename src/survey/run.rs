@@ -7,6 +7,7 @@ use thiserror::Error;
 
 use super::finding::Finding;
 use super::record::{Stages, record};
+use super::stages::{self, Measured};
 use super::{MeasuredSpeaker, Survey};
 use crate::files::{self, FileError, Replacement};
 use crate::tables::{
@@ -107,9 +108,15 @@ pub fn run(
         });
         tracks_file.append(&tracks.take())
     })?;
-    let stages = Stages::default();
-    match goal {
-        Goal::Measured | Goal::Report => {}
+    let mut record_of = Stages::default();
+    if goal == Goal::Report {
+        let mut measured = Measured {
+            table: &mut gathered.table,
+            observations: &gathered.observations,
+        };
+        let settings = &survey.settings;
+        let normalized = stages::normalize(&mut measured, settings, &mut gathered.findings);
+        record_of.settings.insert("normalize", normalized);
     }
 
     tokens_file.append(&gathered.table.bytes())?;
@@ -132,7 +139,7 @@ pub fn run(
     gathered.findings.sort();
     let record = record(
         survey,
-        &stages,
+        &record_of,
         &gathered.counts,
         &gathered.hashes,
         &gathered.findings,
