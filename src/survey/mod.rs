@@ -2,7 +2,7 @@
 //!
 //! [`Survey::open`] reads a folder and plans its work, one unit per speaker;
 //! [`Survey::measure`] does the units on all threads and gives each speaker's tokens in order;
-//! [`run`] goes on from there to the tables and the page. What is wrong with a file, a line or a
+//! [`run()`] goes on from there to the tables and the page. What is wrong with a file, a line or a
 //! speaker is a [`Finding`]; only what leaves nothing to do is a [`SurveyError`].
 
 mod finding;

@@ -2,7 +2,7 @@
 //! it gives.
 //!
 //! One broad cloud stands for all vowels of all speakers; a speaker only moves it. It says nothing
-//! about any one vowel: /u/ as front as [y] lies as well inside it as /u/ does.
+//! about any one vowel: /u/ as front as `y` lies as well inside it as /u/ does.
 
 /// Centre of the cloud of all vowels for a speaker of middle size: ln of F1, F2, F3 in hertz.
 ///
