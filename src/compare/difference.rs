@@ -102,6 +102,36 @@ pub fn difference(
     })
 }
 
+/// A mean over speakers and its 95 % interval, made as in [`difference`].
+///
+/// `None` for fewer than two speakers.
+pub fn mean_interval(
+    values: &[f64],
+    resampling: &Resampling,
+    random: &mut Pcg64,
+) -> Option<(f64, [f64; 2])> {
+    let n = values.len() as f64;
+    if values.len() < 2 {
+        return None;
+    }
+    let mean = values.iter().sum::<f64>() / n;
+    let scale = (n / (n - 1.0)).sqrt() * student_quantile(n - 1.0) / NORMAL_975;
+    let mut draws: Vec<f64> = (0..resampling.replicates)
+        .map(|_| {
+            let sum: f64 = (0..values.len())
+                .map(|_| values[random.random_range(0..values.len())])
+                .sum();
+            scale * (sum / n - mean)
+        })
+        .collect();
+    draws.sort_by(f64::total_cmp);
+    let at = |share| mean + quantile(&draws, share).unwrap_or(0.0);
+    Some((
+        mean,
+        [at(0.5 - CONFIDENCE / 2.0), at(0.5 + CONFIDENCE / 2.0)],
+    ))
+}
+
 /// 97.5 % quantile of the standard normal distribution.
 const NORMAL_975: f64 = 1.959_963_984_540_054;
 
@@ -390,6 +420,18 @@ mod tests {
         for (ours, theirs) in interval.iter().zip(welch) {
             // A tenth of the length: bootstrap and Student are not the same thing.
             assert!((ours - theirs).abs() < 0.18, "{interval:?}");
+        }
+    }
+
+    #[test]
+    fn the_interval_of_a_mean_is_near_students() {
+        let resampling = Resampling::default();
+        let (mean, interval) =
+            mean_interval(&SECOND, &resampling, &mut resampling.stream(4)).unwrap();
+        assert!((mean - 15.4 / 6.0).abs() < 1e-12);
+        // scipy 1.17.1: ttest_1samp(y, 0).confidence_interval().
+        for (ours, theirs) in interval.iter().zip([1.8811781771636498, 3.252155156169684]) {
+            assert!((ours - theirs).abs() < 0.13, "{interval:?}");
         }
     }
 
