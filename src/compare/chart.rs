@@ -48,17 +48,14 @@ pub struct Space {
 pub fn group_vowels(panel: &Panel, group: Option<usize>) -> Vec<GroupVowel> {
     let members = panel.members(group);
     let durations = panel.means(Measure::Duration);
+    let cells = panel.cells();
     (0..panel.vowels.len())
         .filter_map(|vowel| {
             let mut means = Vec::new();
             let mut tokens = Vec::new();
             let mut paths = Vec::new();
             for s in &members {
-                let own: Vec<_> = panel
-                    .tokens
-                    .iter()
-                    .filter(|t| t.vowel == vowel && t.speaker == *s)
-                    .collect();
+                let own = &cells[vowel][*s];
                 let points: Vec<[f64; 2]> =
                     own.iter().filter_map(|t| t.place_at_reference()).collect();
                 means.extend(Cloud::of(&points).map(|c| c.mean));
@@ -137,4 +134,22 @@ fn mean_path(paths: &[[[f64; 2]; 5]]) -> Option<[[f64; 2]; 5]> {
             std::array::from_fn(|f| paths.iter().map(|p| p[k][f]).sum::<f64>() / n)
         })
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn paths_are_averaged_point_by_point() {
+        let rising: Vec<(f64, [f64; 2])> = (1..10)
+            .map(|k| (f64::from(k) / 10.0, [f64::from(k), 2.0 * f64::from(k)]))
+            .collect();
+        let level: Vec<(f64, [f64; 2])> =
+            (1..10).map(|k| (f64::from(k) / 10.0, [1.0, 2.0])).collect();
+        let mean = mean_path(&[path(&rising).unwrap(), path(&level).unwrap()]).unwrap();
+        // At 35 % the first stands at (3.5, 7), the second at (1, 2).
+        assert!((mean[1][0] - 2.25).abs() < 1e-9 && (mean[1][1] - 4.5).abs() < 1e-9);
+        assert_eq!(mean_path(&[]), None);
+    }
 }

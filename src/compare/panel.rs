@@ -210,13 +210,13 @@ impl Panel {
             .collect()
     }
 
-    /// Number of tokens of every vowel (outer) and speaker (inner).
-    pub fn counts(&self) -> Vec<Vec<usize>> {
-        let mut counts = vec![vec![0; self.speakers.len()]; self.vowels.len()];
+    /// The tokens of every vowel (outer) and speaker (inner).
+    pub fn cells(&self) -> Vec<Vec<Vec<&PanelToken>>> {
+        let mut cells = vec![vec![Vec::new(); self.speakers.len()]; self.vowels.len()];
         for t in &self.tokens {
-            counts[t.vowel][t.speaker] += 1;
+            cells[t.vowel][t.speaker].push(t);
         }
-        counts
+        cells
     }
 
     /// The speakers of a group; everybody for `None`.

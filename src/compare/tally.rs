@@ -4,6 +4,8 @@ use std::collections::BTreeMap;
 
 use crate::vowel::Vowel;
 
+use super::resample::quantile;
+
 /// What became of one token.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Fate {
@@ -13,6 +15,8 @@ pub struct Fate {
     pub vowel: Option<Vowel>,
     /// Its doubts, or why it was not measured.
     pub reading: Result<Vec<String>, String>,
+    /// Standard errors of F1 to F3 in hertz, where stated.
+    pub sd_hz: [Option<f64>; 3],
     /// What it was identified as, and how probably; `None` where it was not.
     pub identified: Option<(Vowel, f64)>,
 }
@@ -39,6 +43,8 @@ pub struct Tally {
     /// How often identification agrees at which stated probability: for each tenth from 0, the
     /// tokens, their mean probability, and how many agree.
     pub reliability: Vec<Reliability>,
+    /// Median of the stated standard errors of F1 to F3 in hertz.
+    pub median_sd_hz: [Option<f64>; 3],
     /// Per speaker: tokens, measured, doubtful, identified, agreeing.
     pub speakers: BTreeMap<String, [usize; 5]>,
 }
@@ -58,11 +64,15 @@ impl Tally {
     /// Counts the fates of tokens.
     pub fn of(fates: &[Fate]) -> Self {
         let mut tally = Self::default();
+        let mut sds: [Vec<f64>; 3] = Default::default();
         let mut tenths = [(0usize, 0.0, 0usize); 10];
         for fate in fates {
             let own = tally.speakers.entry(fate.speaker.clone()).or_default();
             tally.tokens += 1;
             own[0] += 1;
+            for (known, sd) in sds.iter_mut().zip(fate.sd_hz) {
+                known.extend(sd);
+            }
             match &fate.reading {
                 Err(reason) => *tally.reasons.entry(reason.clone()).or_default() += 1,
                 Ok(doubts) => {
@@ -93,6 +103,10 @@ impl Tally {
                 tenth.2 += usize::from(agrees);
             }
         }
+        tally.median_sd_hz = sds.map(|mut known| {
+            known.sort_by(f64::total_cmp);
+            quantile(&known, 0.5)
+        });
         tally.reliability = tenths
             .iter()
             .map(|(n, sum, agree)| {
@@ -118,6 +132,7 @@ mod tests {
             speaker: "a".to_owned(),
             vowel: Some(Vowel::from_ipa("i")),
             reading,
+            sd_hz: [Some(12.0), None, Some(30.0)],
             identified: taken.map(|(v, p)| (Vowel::from_ipa(v), p)),
         };
         let tally = Tally::of(&[
@@ -138,6 +153,7 @@ mod tests {
             1
         );
         assert_eq!(tally.speakers["a"], [4, 3, 1, 3, 2]);
+        assert_eq!(tally.median_sd_hz, [Some(12.0), None, Some(30.0)]);
         let last = tally.reliability[9];
         assert_eq!(last.tokens, 2);
         assert!((last.stated - 0.95).abs() < 1e-12 && last.agreeing == 1.0);
