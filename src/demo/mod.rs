@@ -42,6 +42,8 @@ pub struct DemoSurvey {
     pub labels_csv: String,
     /// `speakers.csv`.
     pub speakers_csv: String,
+    /// `survey.toml`: the title, and that it is invented.
+    pub survey_toml: String,
     /// What was said in each recording, in the order of `recordings`.
     pub truths: Vec<Truth>,
     /// What was built into the villages.
@@ -63,6 +65,22 @@ pub struct Truth {
     pub f0_hz: f64,
     /// Proportion of the vowel's duration, and F1 to F3 in hertz there.
     pub track: Vec<(f64, [f64; 3])>,
+}
+
+impl Truth {
+    /// F1 to F3 in hertz at a proportion of the vowel, linear between the points of the track.
+    pub fn formant_hz(&self, proportion: f64) -> [f64; 3] {
+        let after = self.track.iter().position(|(p, _)| *p >= proportion);
+        match after {
+            None => self.track.last().map_or([f64::NAN; 3], |(_, f)| *f),
+            Some(0) => self.track[0].1,
+            Some(n) => {
+                let ((p, a), (q, b)) = (self.track[n - 1], self.track[n]);
+                let share = (proportion - p) / (q - p);
+                std::array::from_fn(|k| a[k] + share * (b[k] - a[k]))
+            }
+        }
+    }
 }
 
 /// Makes the invented survey.
@@ -90,6 +108,11 @@ pub fn survey(seed: u64) -> Result<DemoSurvey, TargetsError> {
         recordings: Vec::new(),
         labels_csv: "recording,start_s,end_s,label,word,speaker\n".to_owned(),
         speakers_csv: "speaker,village,age_group,note\n".to_owned(),
+        survey_toml: format!(
+            "# Invented by `isophone demo`; the villages are on no map.\n[report]\n\
+             title = \"{} and {}: two invented villages\"\ninvented = true\n",
+            VILLAGES[0], VILLAGES[1]
+        ),
         truths: Vec::new(),
         put_in,
     };

@@ -9,7 +9,7 @@ use super::targets::{Group, Path, Targets, VOWELS};
 use super::voice::{Voice, gaussian};
 
 /// Two villages of our own invention.
-pub const VILLAGES: [&str; 2] = ["Tarnholt", "Brackenoe"];
+pub const VILLAGES: [&str; 2] = ["Brackenoe", "Tarnholt"];
 
 /// The village that has one vowel where the other has two.
 const MERGED_IN: &str = VILLAGES[0];

@@ -19,11 +19,7 @@ pub struct Subject {
 }
 
 impl Subject {
-    /// Gathers what a page needs from the tables of a run.
-    ///
-    /// Speakers are grouped by the speaker column `by`; a column that is not there groups nobody.
-    /// The normalization is the one the table names; a table that names none is normalized by the
-    /// method that fits it.
+    /// Gathers what a page needs from the tables of a run; see [`Self::of`].
     pub fn gather(
         table: TokenTable,
         tracks: &TrackTable,
@@ -39,6 +35,20 @@ impl Subject {
                 row.observation(track.into_iter().flatten().map(|t| t.point()).collect())
             })
             .collect();
+        Self::of(table, &observations, by, resampling)
+    }
+
+    /// Works out what a page shows of a table and the observations of its measured rows.
+    ///
+    /// Speakers are grouped by the speaker column `by`; a column that is not there groups nobody.
+    /// The normalization is the one the table names; a table that names none is normalized by the
+    /// method that fits it.
+    pub fn of(
+        table: TokenTable,
+        observations: &[Observation],
+        by: Option<&str>,
+        resampling: Resampling,
+    ) -> Self {
         let fates: Vec<Fate> = table.rows.iter().map(fate).collect();
         let column = by.and_then(|by| table.speaker_columns.iter().position(|c| c == by));
         let mut belonging = Belonging::default();
@@ -49,8 +59,8 @@ impl Subject {
                 }
             }
         }
-        let method = named_method(&table).unwrap_or_else(|| advise(&observations).method);
-        let findings = Findings::of(&fates, &observations, &method, &belonging, resampling);
+        let method = named_method(&table).unwrap_or_else(|| advise(observations).method);
+        let findings = Findings::of(&fates, observations, &method, &belonging, resampling);
         Self {
             group_column: column.map(|c| table.speaker_columns[c].clone()),
             table,

@@ -9,6 +9,7 @@ mod finding;
 mod folder;
 mod in_order;
 mod measure;
+mod page;
 mod plan;
 mod record;
 mod run;
@@ -26,6 +27,7 @@ use crate::tables::{SpeakerTable, TableError};
 
 pub use finding::{Finding, FindingKind, Weight, count_findings};
 pub use measure::MeasuredSpeaker;
+pub use page::{page, recorded_group};
 pub use plan::{LabelCounts, Plan, PlannedVowel, RecordingPlan, SpeakerPlan};
 pub use run::{Goal, Progress, RunError, RunSummary, SurveyCounts, run};
 pub use settings::{Asking, LabelUse, Settings, SettingsError, SpeakerFrom};

@@ -10,6 +10,7 @@ use serde_json::{Value, json};
 use super::finding::{Finding, count_findings};
 use super::settings::{LabelUse, Settings, SpeakerFrom};
 use super::{Survey, SurveyCounts};
+use crate::report::Nature;
 
 /// What later stages add to the record.
 #[derive(Debug, Clone, PartialEq, Default)]
@@ -126,6 +127,10 @@ fn settings_value(survey: &Survey) -> Value {
                 "the program: the first column that puts at least two speakers on average into \
                  each of at least two groups"
             },
+        },
+        "report": {
+            "title": survey.settings.title,
+            "invented": survey.settings.nature == Nature::Invented,
         },
     })
 }

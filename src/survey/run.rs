@@ -6,10 +6,13 @@ use std::path::{Path, PathBuf};
 use thiserror::Error;
 
 use super::finding::Finding;
+use super::page::page;
 use super::record::{Stages, record};
 use super::stages::{self, Measured};
 use super::{MeasuredSpeaker, Survey};
+use crate::compare::Resampling;
 use crate::files::{self, FileError, Replacement};
+use crate::report::{ReportError, Subject};
 use crate::tables::{
     ColumnGroups, TokenRow, TokenTable, TrackRow, TrackWriter, describe, token_columns,
     track_columns,
@@ -70,6 +73,12 @@ pub enum RunError {
     /// The disk refused.
     #[error(transparent)]
     File(#[from] FileError),
+    /// The record just written cannot be read back.
+    #[error("the record of the run cannot be read back: {0}")]
+    Record(serde_json::Error),
+    /// The page could not be made.
+    #[error(transparent)]
+    Page(#[from] ReportError),
 }
 
 impl RunError {
@@ -77,6 +86,9 @@ impl RunError {
     pub fn hint(&self) -> String {
         match self {
             Self::File(error) => error.hint().to_owned(),
+            Self::Record(_) | Self::Page(_) => {
+                "this is a defect of the program; the tables are complete".to_owned()
+            }
         }
     }
 }
@@ -152,6 +164,15 @@ pub fn run(
     }
     files::write(&out.join("run.json"), &record)?;
     written.push(out.join("run.json"));
+    if goal == Goal::Report {
+        let record = serde_json::from_slice(&record).map_err(RunError::Record)?;
+        let observations: Vec<Observation> = gathered.observations.into_iter().flatten().collect();
+        let group = survey.group.as_deref();
+        let subject = Subject::of(gathered.table, &observations, group, Resampling::default());
+        let path = out.join("report.html");
+        files::write(&path, page(&subject, &record)?.as_bytes())?;
+        written.insert(0, path);
+    }
     Ok(RunSummary {
         counts: gathered.counts,
         findings: gathered.findings,

@@ -11,6 +11,7 @@ use thiserror::Error;
 
 use super::Overrides;
 use crate::normalize::Method;
+use crate::report::Nature;
 use crate::segments::LabelColumns;
 use crate::vowel::Notation;
 
@@ -23,6 +24,14 @@ pub(super) struct Asked {
     pub(super) speakers: AskedSpeakers,
     pub(super) normalize: AskedNormalize,
     pub(super) identify: AskedIdentify,
+    pub(super) report: AskedReport,
+}
+
+#[derive(Debug, Clone, PartialEq, Eq, Default, Deserialize)]
+#[serde(deny_unknown_fields, default)]
+pub(super) struct AskedReport {
+    title: Option<String>,
+    invented: Option<bool>,
 }
 
 #[derive(Debug, Clone, PartialEq, Eq, Default, Deserialize)]
@@ -128,6 +137,10 @@ pub struct Settings {
     pub method: Option<Method>,
     /// Path of the model; `None` for the shipped one.
     pub model: Option<PathBuf>,
+    /// Title of the page; `None` for one the program makes.
+    pub title: Option<String>,
+    /// Whether people were recorded.
+    pub nature: Nature,
 }
 
 /// Whether something was asked for or is there by convention.
@@ -301,6 +314,11 @@ impl Asked {
             group: self.speakers.group,
             method,
             model: self.identify.model.map(PathBuf::from),
+            title: self.report.title,
+            nature: match self.report.invented {
+                Some(true) => Nature::Invented,
+                _ => Nature::Recorded,
+            },
         })
     }
 }
