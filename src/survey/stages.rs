@@ -5,7 +5,7 @@ use serde_json::{Value, json};
 use super::finding::{Finding, FindingKind};
 use super::settings::Settings;
 use crate::normalize::{Method, Normalization, advise};
-use crate::tables::{Kind, NormalizedCells, TokenTable, round_to};
+use crate::tables::{NormalizedCells, TokenTable};
 use crate::tokens::Observation;
 
 /// Rows of the token table with what later stages need of each; `None` where it is unmeasured.
@@ -40,18 +40,9 @@ pub(super) fn normalize(
     note_left_out(&normalization, settings, findings);
     measured.table.groups.normalized = true;
     for (row, observation) in measured.table.rows.iter_mut().zip(measured.observations) {
-        row.normalized = observation.as_ref().map(|observation| {
-            let value = normalization.normalize(observation).value;
-            let formant = value.map(|v| v.map(|v| round_to(Kind::Normalized, v)));
-            NormalizedCells {
-                formant,
-                method: if formant == [None; 3] {
-                    String::new()
-                } else {
-                    method.to_string()
-                },
-            }
-        });
+        row.normalized = observation
+            .as_ref()
+            .map(|observation| NormalizedCells::of(&normalization, observation));
     }
     describe_method(&method, &chosen_by)
 }

@@ -120,6 +120,11 @@ impl ObservationTable {
                 Some(cell) => cell.positive(),
                 None => Ok(None),
             };
+            // A standard error below half a tenth of a hertz is written as `0.0`.
+            let number = |column: Option<usize>| match cell(column) {
+                Some(cell) => cell.number(),
+                None => Ok(None),
+            };
             let name = match cell(token) {
                 Some(cell) => cell.text()?,
                 None => format!("row {}", row + 1),
@@ -151,7 +156,7 @@ impl ObservationTable {
                     duration_s: positive(duration)?,
                     f0_hz: positive(f0)?,
                     formant_hz,
-                    sd_hz: [positive(sds[0])?, positive(sds[1])?, positive(sds[2])?],
+                    sd_hz: [number(sds[0])?, number(sds[1])?, number(sds[2])?],
                     track: Vec::new(),
                 })
             });

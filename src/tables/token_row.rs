@@ -4,6 +4,7 @@ use std::borrow::Cow;
 
 use super::cell::{guard, optional, round_to};
 use super::column::{Column, Kind};
+use crate::normalize::Normalization;
 use crate::tokens::{Observation, Token};
 use crate::vowel::Vowel;
 
@@ -304,6 +305,20 @@ impl TokenRow {
 }
 
 impl NormalizedCells {
+    /// The cells of one observation; no method stands where nothing could be normalized.
+    pub fn of(normalization: &Normalization, observation: &Observation) -> Self {
+        let value = normalization.normalize(observation).value;
+        let formant = value.map(|v| v.map(|v| round_to(Kind::Normalized, v)));
+        Self {
+            formant,
+            method: if formant == [None; 3] {
+                String::new()
+            } else {
+                normalization.method.to_string()
+            },
+        }
+    }
+
     /// The names of the columns, in order.
     pub fn columns() -> Vec<Column> {
         NORMALIZED.to_vec()
