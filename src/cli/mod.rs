@@ -13,6 +13,7 @@ mod norms;
 mod report;
 mod run;
 mod survey;
+mod table;
 mod train;
 
 use std::process::ExitCode;

@@ -4,6 +4,10 @@
 //! report success: the sum over classes is taken with one maximum for the whole matrix and floored.
 //! So columns are standardised here, the gradient of the stated objective is computed exactly after
 //! every fit, and where it does not vanish the fit is finished by Newton steps.
+//!
+//! How often a vowel stands in the training tables says nothing about how often it stands in
+//! somebody's survey, so every vowel is as likely as any other before its formants are seen: the
+//! logarithm of its number of rows is taken off its intercept after the fit.
 
 use linfa::prelude::*;
 use linfa_logistic::MultiLogisticRegression;
@@ -104,10 +108,11 @@ impl Logistic {
                 .unwrap_or_else(|| Weights::zero(present.len(), samples.features.len())),
         };
         let fitted = problem.finish(begin).ok_or(FitError::NoMinimum)?;
-        Ok(Self {
-            weights: spread_out(&fitted, &present, samples.vowels.len()),
-            standard,
-        })
+        let mut weights = spread_out(&fitted, &present, samples.vowels.len());
+        for (class, ln_count) in present.iter().zip(ln_counts(&class, present.len())) {
+            weights.intercept[*class] -= ln_count;
+        }
+        Ok(Self { standard, weights })
     }
 
     /// Natural logarithms of the probabilities of the classes for one row.
@@ -137,6 +142,15 @@ pub(super) fn present(samples: &Samples) -> Vec<usize> {
     present.sort_unstable();
     present.dedup();
     present
+}
+
+/// Logarithms of the numbers of rows of the classes.
+fn ln_counts(class: &[usize], classes: usize) -> Vec<f64> {
+    let mut counts = vec![0.0_f64; classes];
+    for class in class {
+        counts[*class] += 1.0;
+    }
+    counts.into_iter().map(f64::ln).collect()
 }
 
 /// Puts the weights of the fitted classes in their places; the others are out of the question.

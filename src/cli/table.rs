@@ -1,0 +1,117 @@
+//! What the verbs on tables share: which columns stand for what, and the reading.
+
+use std::path::{Path, PathBuf};
+
+use super::frame::Failure;
+use crate::files;
+use crate::tables::{ObservationColumns, ObservationTable, TrackTable};
+
+/// How the columns of foreign tables are named.
+#[derive(Debug, clap::Args)]
+pub(super) struct ColumnArguments {
+    /// Takes COLUMN of the table for NAME (token, speaker, vowel, f0_hz, f1_hz, f2_hz, f3_hz,
+    /// f1_sd_hz, f2_sd_hz, f3_sd_hz, duration_s). With several tables it applies to those that have
+    /// COLUMN.
+    #[arg(long = "column", value_name = "NAME=COLUMN")]
+    renamed: Vec<String>,
+}
+
+impl ColumnArguments {
+    /// The renamings, as given.
+    pub(super) fn renamed(&self) -> &[String] {
+        &self.renamed
+    }
+
+    /// Reads a table of observations.
+    ///
+    /// # Errors
+    /// A failure where the file cannot be read or is no such table.
+    pub(super) fn read(&self, path: &Path) -> Result<ObservationTable, Failure> {
+        let bytes = files::read(path)?;
+        self.parse(path, &bytes)
+    }
+
+    /// Reads several tables; each with its bytes, for hashing.
+    ///
+    /// # Errors
+    /// Also where a renaming fits none of the tables.
+    pub(super) fn read_all(
+        &self,
+        paths: &[PathBuf],
+    ) -> Result<Vec<(ObservationTable, Vec<u8>)>, Failure> {
+        let all: Vec<Vec<u8>> = paths
+            .iter()
+            .map(|path| files::read(path))
+            .collect::<Result<_, _>>()?;
+        for renaming in &self.renamed {
+            let (_, column) = split(renaming)?;
+            if !all.iter().any(|bytes| has_column(bytes, column)) {
+                return Err(Failure::new(format!("no table has a column `{column}`"))
+                    .hint(format!("it was asked for by `--column {renaming}`")));
+            }
+        }
+        paths
+            .iter()
+            .zip(all)
+            .map(|(path, bytes)| Ok((self.parse_fitting(path, &bytes)?, bytes)))
+            .collect()
+    }
+
+    fn parse(&self, path: &Path, bytes: &[u8]) -> Result<ObservationTable, Failure> {
+        self.parse_with(path, bytes, self.renamed.iter())
+    }
+
+    fn parse_fitting(&self, path: &Path, bytes: &[u8]) -> Result<ObservationTable, Failure> {
+        let fitting = self
+            .renamed
+            .iter()
+            .filter(|renaming| split(renaming).is_ok_and(|(_, column)| has_column(bytes, column)));
+        self.parse_with(path, bytes, fitting)
+    }
+
+    fn parse_with<'a>(
+        &self,
+        path: &Path,
+        bytes: &[u8],
+        renamed: impl Iterator<Item = &'a String>,
+    ) -> Result<ObservationTable, Failure> {
+        let mut columns = ObservationColumns::as_named();
+        for renaming in renamed {
+            let (name, column) = split(renaming)?;
+            columns.rename(name, column).map_err(Failure::new)?;
+        }
+        ObservationTable::parse(bytes, &columns).map_err(|error| Failure::of_table(path, &error))
+    }
+}
+
+/// `NAME=COLUMN` taken apart.
+fn split(renaming: &str) -> Result<(&str, &str), Failure> {
+    renaming.split_once('=').ok_or_else(|| {
+        Failure::new(format!(
+            "`--column {renaming}` is not of the form NAME=COLUMN"
+        ))
+        .hint("for example `--column speaker=talker`")
+    })
+}
+
+/// Whether the header line names a column. Headers with quoted commas are none of the tables this
+/// is asked about: the renaming is then not found, and that is said.
+fn has_column(bytes: &[u8], column: &str) -> bool {
+    let bytes = bytes.strip_prefix(b"\xEF\xBB\xBF").unwrap_or(bytes);
+    let header = bytes.split(|b| *b == b'\n').next().unwrap_or_default();
+    String::from_utf8_lossy(header)
+        .split(',')
+        .any(|name| name.trim().trim_matches('"') == column)
+}
+
+/// Reads tracks and gives them to the observations of a table.
+///
+/// # Errors
+/// A failure where the file cannot be read, is no track table, or is another run's.
+pub(super) fn add_tracks(table: &mut ObservationTable, path: &Path) -> Result<(), Failure> {
+    let bytes = files::read(path)?;
+    let tracks = TrackTable::parse(&bytes).map_err(|error| Failure::of_table(path, &error))?;
+    table
+        .add_tracks(&tracks)
+        .map_err(|error| Failure::of_table(path, &error))
+}

@@ -1,0 +1,18 @@
+//! The models the program brings.
+
+use super::model::Model;
+use super::model_text::ModelError;
+
+/// Texts of the models in `models/`, best first: the first that has an answer is asked.
+const MODELS: [&str; 2] = [
+    include_str!("../../models/american-english-movement.toml"),
+    include_str!("../../models/american-english-steady.toml"),
+];
+
+/// The models for American English, best first.
+///
+/// # Errors
+/// [`ModelError`] where a text compiled in is damaged; the tests read each.
+pub fn shipped() -> Result<Vec<Model>, ModelError> {
+    MODELS.iter().map(|text| Model::parse(text)).collect()
+}
