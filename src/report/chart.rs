@@ -10,9 +10,11 @@ use super::order::shown;
 pub(super) const WIDTH: f64 = 640.0;
 const HEIGHT: f64 = 500.0;
 /// Room left of and below the plane for the scales.
-const LEFT: f64 = 58.0;
+const LEFT: f64 = 70.0;
 const BELOW: f64 = 46.0;
 const EDGE: f64 = 14.0;
+/// Room around the plane of a drawing without scales: half a symbol.
+const MARGIN: f64 = 10.0;
 
 /// Share of the population a region or an ellipse stands for.
 const SHARE: f64 = 0.95;
@@ -117,22 +119,11 @@ impl Plane {
         })
     }
 
-    /// The same plane drawn smaller and without scales.
-    pub(super) fn small(self, width: f64, height: f64) -> Self {
-        Self {
-            width,
-            height,
-            left: 4.0,
-            below: 4.0,
-            ..self
-        }
-    }
-
     fn place(&self, [f1, f2]: [f64; 2]) -> (f64, f64) {
         let share = |k: usize, v: f64| {
             (v.max(1.0).ln() - self.low[k].ln()) / (self.high[k].ln() - self.low[k].ln())
         };
-        let edge = if self.left > 10.0 { EDGE } else { 4.0 };
+        let edge = if self.left > MARGIN { EDGE } else { MARGIN };
         let x = self.left + (1.0 - share(1, f2)) * (self.width - self.left - edge);
         let y = edge + share(0, f1) * (self.height - self.below - edge);
         (x, y)
@@ -201,10 +192,30 @@ pub(super) fn shared_plane(findings: &Findings) -> Option<Plane> {
         .collect::<Vec<_>>()
     });
     let speakers = findings.speakers.iter().map(|v| v.tokens.mean);
-    // Far outliers would squeeze all others: the plane ends where speech does.
-    let inside =
-        |p: &[f64; 2]| (120.0..=1_600.0).contains(&p[0]) && (400.0..=4_000.0).contains(&p[1]);
-    Plane::around(outlines.chain(speakers).filter(inside))
+    Plane::around(outlines.chain(speakers).filter(speech))
+}
+
+/// A small plane around the speakers' own means.
+pub(super) fn speakers_plane(findings: &Findings, width: f64, height: f64) -> Option<Plane> {
+    let plane = Plane::around(
+        findings
+            .speakers
+            .iter()
+            .map(|v| v.tokens.mean)
+            .filter(speech),
+    )?;
+    Some(Plane {
+        width,
+        height,
+        left: MARGIN,
+        below: MARGIN,
+        ..plane
+    })
+}
+
+/// Far outliers would squeeze all others: a plane ends where speech does.
+fn speech(p: &[f64; 2]) -> bool {
+    (120.0..=1_600.0).contains(&p[0]) && (400.0..=4_000.0).contains(&p[1])
 }
 
 /// A chart of one or more groups' vowels.

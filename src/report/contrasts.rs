@@ -32,7 +32,8 @@ pub(super) struct ContrastView {
 /// The differences in one formant.
 #[derive(Debug, Clone, Serialize)]
 struct Panel {
-    heading: String,
+    /// What stands left of zero, the formant, what stands right of it.
+    heading: [&'static str; 3],
     middle: String,
     zero: String,
     left: String,
@@ -64,16 +65,16 @@ struct Placed {
 struct Row {
     vowel: String,
     speakers: String,
-    f1_hz: String,
-    f2_hz: String,
-    f1: String,
-    f2: String,
-    g: String,
+    f1_hz: [String; 2],
+    f2_hz: [String; 2],
+    f1: [String; 2],
+    f2: [String; 2],
+    g: [String; 2],
     distance: String,
     p: String,
     p_holm: String,
-    movement: String,
-    duration: String,
+    movement: [String; 2],
+    duration: [String; 2],
     verdict: &'static str,
     told: bool,
 }
@@ -102,7 +103,7 @@ fn view(findings: &Findings, contrast: &Contrast) -> ContrastView {
             SYMBOL_ROOM,
             width,
             height,
-            format!("F1: {second} closer ◂ ▸ {second} opener"),
+            ["◂ closer", "F1", "opener ▸"],
         ),
         panel(
             &rows,
@@ -110,7 +111,7 @@ fn view(findings: &Findings, contrast: &Contrast) -> ContrastView {
             SYMBOL_ROOM + width + GAP,
             width,
             height,
-            format!("F2: {second} backer ◂ ▸ {second} fronter"),
+            ["◂ backer", "F2", "fronter ▸"],
         ),
     ];
     let told = |v: &VowelContrast| v.verdict() == PlaceVerdict::Different;
@@ -118,7 +119,7 @@ fn view(findings: &Findings, contrast: &Contrast) -> ContrastView {
         title: format!("{second} against {first}"),
         note: format!(
             "{} and {} speakers. Hertz at the size of the survey's middle speaker, {second} less \
-             {first}; the line is the 95 % interval over speakers. Filled: the place of the vowel \
+             {first} (closer, opener, backer and fronter are said of {second}); the line is the 95 % interval over speakers. Filled: the place of the vowel \
              differs (permutation of speakers, corrected for {} vowels).",
             contrast.speakers[1],
             contrast.speakers[0],
@@ -155,7 +156,7 @@ fn panel(
     left: f64,
     width: f64,
     height: f64,
-    heading: String,
+    heading: [&'static str; 3],
 ) -> Panel {
     let found: Vec<Option<&Difference>> = rows.iter().map(|v| v.measure(measure)).collect();
     let reach = found
@@ -210,14 +211,12 @@ fn step(reach: f64) -> f64 {
 
 fn row(findings: &Findings, v: &VowelContrast) -> Row {
     let with_interval = |measure: Measure, digits: usize, scale: f64| match v.measure(measure) {
-        Some(d) => {
-            let value = signed(scale * d.value, digits);
-            match d.interval {
-                Some(i) => format!("{value} ({})", interval(i.map(|e| scale * e), digits)),
-                None => value,
-            }
-        }
-        None => "–".to_owned(),
+        Some(d) => [
+            signed(scale * d.value, digits),
+            d.interval
+                .map_or_else(String::new, |i| interval(i.map(|e| scale * e), digits)),
+        ],
+        None => ["–".to_owned(), String::new()],
     };
     let g = |measure: Measure| match v.measure(measure).and_then(|d| d.hedges_g) {
         Some(g) => signed(g, 2),
@@ -232,7 +231,7 @@ fn row(findings: &Findings, v: &VowelContrast) -> Row {
         f2_hz: with_interval(Measure::F2AtReference, 0, 1.0),
         f1: with_interval(Measure::F1, 2, 1.0),
         f2: with_interval(Measure::F2, 2, 1.0),
-        g: format!("{} / {}", g(Measure::F1), g(Measure::F2)),
+        g: [g(Measure::F1), g(Measure::F2)],
         distance: or_dash(v.distance_hz, 0),
         p: v.place
             .as_ref()

@@ -136,7 +136,7 @@ fn view<'a>(subject: &'a Subject, frame: &'a Frame) -> PageView<'a> {
         doubtful: doubtful(subject),
         doubtful_count: findings.tally.doubtful,
         most_doubts: MOST_DOUBTS,
-        speakers: speakers::view(subject, shared_plane(findings)),
+        speakers: speakers::view(subject),
         left_out: &findings.panel.left_out,
         method: method_view(findings),
         resampling: ResamplingView {

@@ -4,8 +4,8 @@ use serde::Serialize;
 
 use crate::compare::Findings;
 
-use super::chart::Plane;
-use super::numbers::{or_dash, percent};
+use super::chart::{Plane, speakers_plane};
+use super::numbers::{or_dash, percent, plain};
 use super::order::shown;
 use super::subject::Subject;
 
@@ -17,6 +17,7 @@ const MOST_DRAWN: usize = 48;
 pub(super) struct SpeakersView {
     columns: Vec<String>,
     rows: Vec<Row>,
+    vowels: Vec<String>,
     small: Vec<Small>,
     small_width: f64,
     small_height: f64,
@@ -41,11 +42,13 @@ struct Small {
     group: usize,
     group_name: String,
     symbols: Vec<[String; 3]>,
+    /// F1 and F2 of every vowel, in the order of showing.
+    means: Vec<String>,
     alt: String,
 }
 
 /// The table and the small charts.
-pub(super) fn view(subject: &Subject, plane: Option<Plane>) -> SpeakersView {
+pub(super) fn view(subject: &Subject) -> SpeakersView {
     let findings = &subject.findings;
     let given = subject.given();
     let rows = findings
@@ -74,13 +77,17 @@ pub(super) fn view(subject: &Subject, plane: Option<Plane>) -> SpeakersView {
         .collect();
     let (width, height) = (150.0, 118.0);
     let speakers = findings.panel.speakers.len();
-    let small = match plane {
-        Some(plane) if speakers <= MOST_DRAWN => small_charts(findings, plane.small(width, height)),
+    let small = match speakers_plane(findings, width, height) {
+        Some(plane) if speakers <= MOST_DRAWN => small_charts(findings, plane),
         _ => Vec::new(),
     };
     SpeakersView {
         columns: subject.table.speaker_columns.clone(),
         rows,
+        vowels: shown(&findings.panel.vowels)
+            .into_iter()
+            .map(|v| findings.panel.vowels[v].to_string())
+            .collect(),
         not_drawn: if small.is_empty() { speakers } else { 0 },
         small,
         small_width: width,
@@ -107,7 +114,27 @@ fn small_charts(findings: &Findings, plane: Plane) -> Vec<Small> {
                     Some([x, y, findings.panel.vowels[*v].to_string()])
                 })
                 .collect();
+            let means = order
+                .iter()
+                .map(|v| {
+                    let own = findings
+                        .speakers
+                        .iter()
+                        .find(|w| w.speaker == s && w.vowel == *v);
+                    own.map_or_else(
+                        || "–".to_owned(),
+                        |w| {
+                            format!(
+                                "{} {}",
+                                plain(w.tokens.mean[0], 0),
+                                plain(w.tokens.mean[1], 0)
+                            )
+                        },
+                    )
+                })
+                .collect();
             Small {
+                means,
                 name: speaker.name.clone(),
                 group: speaker.group.unwrap_or(0),
                 group_name: speaker
