@@ -304,12 +304,12 @@ pub(super) fn chart(
     }
 }
 
-/// Leaves out steps whose figures would touch.
+/// Leaves out steps whose figures would touch, also where they are drawn larger on a small screen.
 fn spaced(lines: Vec<Line>) -> Vec<Line> {
     let mut kept: Vec<Line> = Vec::new();
     for line in lines {
         let at = |l: &Line| l.at.parse::<f64>().unwrap_or(0.0);
-        if kept.last().is_none_or(|l| (at(l) - at(&line)).abs() > 40.0) {
+        if kept.last().is_none_or(|l| (at(l) - at(&line)).abs() > 50.0) {
             kept.push(line);
         }
     }
