@@ -62,7 +62,9 @@ pub(super) fn execute(arguments: &IdentifyArguments, voice: &Voice) -> Result<Ou
         .iter()
         .map(|observation| match observation {
             None => Vec::new(),
-            Some(_) => answers.next().map_or_else(Vec::new, |a| cells(&a).cells()),
+            Some(_) => answers
+                .next()
+                .map_or_else(Vec::new, |a| IdentifiedCells::of(&a).cells()),
         })
         .collect();
     let bytes = table.bytes_with(&IdentifiedCells::columns(), &cells);
@@ -71,25 +73,6 @@ pub(super) fn execute(arguments: &IdentifyArguments, voice: &Voice) -> Result<Ou
         None => voice.give(&bytes)?,
     }
     Ok(outcome)
-}
-
-/// The cells of one answer; empty where the model declined.
-fn cells(answer: &Identification) -> IdentifiedCells {
-    let Ok(ranked) = &answer.ranked else {
-        return IdentifiedCells {
-            model: answer.model.clone(),
-            ..IdentifiedCells::default()
-        };
-    };
-    let first = ranked.first();
-    let second = ranked.get(1);
-    IdentifiedCells {
-        identified: first.map(|(vowel, _)| vowel.clone()),
-        probability: first.map(|(_, p)| *p),
-        second: second.map(|(vowel, _)| vowel.clone()),
-        second_probability: second.map(|(_, p)| *p),
-        model: answer.model.clone(),
-    }
 }
 
 /// Says what was declined and why, which labels no model knows, and how answers agree with labels.

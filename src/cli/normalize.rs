@@ -92,19 +92,7 @@ fn normalized(table: &ObservationTable, normalization: &Normalization) -> Vec<u8
         .iter()
         .map(|observation| match observation {
             None => Vec::new(),
-            Some(observation) => {
-                let value = normalization.normalize(observation).value;
-                let method = if value == [None; 3] {
-                    String::new()
-                } else {
-                    normalization.method.to_string()
-                };
-                NormalizedCells {
-                    formant: value,
-                    method,
-                }
-                .cells()
-            }
+            Some(observation) => NormalizedCells::of(normalization, observation).cells(),
         })
         .collect();
     table.bytes_with(&NormalizedCells::columns(), &cells)

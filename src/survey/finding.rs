@@ -36,6 +36,8 @@ pub enum FindingKind {
     SpeakerLacksVowels,
     /// Tokens could not be identified.
     NotIdentified,
+    /// Labels name a vowel that no model knows.
+    VowelInNoModel,
 }
 
 /// Whether a finding means that something was not done.
@@ -66,6 +68,7 @@ impl FindingKind {
             Self::SpeakerNotNormalized => "speaker not normalized",
             Self::SpeakerLacksVowels => "speaker without the whole vowel set",
             Self::NotIdentified => "not identified",
+            Self::VowelInNoModel => "vowel in no model",
         }
     }
 
@@ -76,7 +79,8 @@ impl FindingKind {
             | Self::RecordingUnlabelled
             | Self::NoSpeakerTable
             | Self::SpeakerLacksVowels
-            | Self::NotIdentified => Weight::Notice,
+            | Self::NotIdentified
+            | Self::VowelInNoModel => Weight::Notice,
             _ => Weight::LeftOut,
         }
     }

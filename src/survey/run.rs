@@ -12,6 +12,7 @@ use super::stages::{self, Measured};
 use super::{MeasuredSpeaker, Survey};
 use crate::compare::Resampling;
 use crate::files::{self, FileError, Replacement};
+use crate::identify::ModelError;
 use crate::report::{ReportError, Subject};
 use crate::tables::{
     ColumnGroups, TokenRow, TokenTable, TrackRow, TrackWriter, describe, token_columns,
@@ -73,6 +74,17 @@ pub enum RunError {
     /// The disk refused.
     #[error(transparent)]
     File(#[from] FileError),
+    /// The model asked for is none.
+    #[error("`{}`: {error}", path.display())]
+    Model {
+        /// Where.
+        path: PathBuf,
+        /// What is wrong with it.
+        error: ModelError,
+    },
+    /// A model the program brings is damaged.
+    #[error("a model of the program itself: {0}")]
+    ShippedModel(ModelError),
     /// The record just written cannot be read back.
     #[error("the record of the run cannot be read back: {0}")]
     Record(serde_json::Error),
@@ -86,6 +98,7 @@ impl RunError {
     pub fn hint(&self) -> String {
         match self {
             Self::File(error) => error.hint().to_owned(),
+            Self::Model { error, .. } | Self::ShippedModel(error) => error.hint().to_owned(),
             Self::Record(_) | Self::Page(_) => {
                 "this is a defect of the program; the tables are complete".to_owned()
             }
@@ -103,6 +116,10 @@ pub fn run(
     goal: Goal,
     mut progress: impl FnMut(Progress),
 ) -> Result<RunSummary, RunError> {
+    let models = match goal {
+        Goal::Measured => Vec::new(),
+        Goal::Report => stages::read_models(&survey.settings)?,
+    };
     files::create_folder(out)?;
     // Begun before any work, so that a place that cannot be written is told at once.
     let tokens_path = out.join("tokens.csv");
@@ -129,6 +146,8 @@ pub fn run(
         let settings = &survey.settings;
         let normalized = stages::normalize(&mut measured, settings, &mut gathered.findings);
         record_of.settings.insert("normalize", normalized);
+        let identified = stages::identify(&mut measured, &models, settings, &mut gathered.findings);
+        record_of.settings.insert("identify", identified);
     }
 
     tokens_file.append(&gathered.table.bytes())?;

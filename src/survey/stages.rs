@@ -1,11 +1,17 @@
 //! What a run does with measured tokens: the same steps the verbs take on a table.
 
+use std::collections::BTreeMap;
+
 use serde_json::{Value, json};
 
+use super::RunError;
 use super::finding::{Finding, FindingKind};
+use super::measure::hash;
 use super::settings::Settings;
+use crate::files;
+use crate::identify::{self, Model, identify_with};
 use crate::normalize::{Method, Normalization, advise};
-use crate::tables::{NormalizedCells, TokenTable};
+use crate::tables::{IdentifiedCells, NormalizedCells, TokenTable};
 use crate::tokens::Observation;
 
 /// Rows of the token table with what later stages need of each; `None` where it is unmeasured.
@@ -83,5 +89,88 @@ fn note_left_out(normalization: &Normalization, settings: &Settings, findings: &
             ),
             "regression-log-mean is made for missing vowels",
         ));
+    }
+}
+
+/// The models of a run, best first: the one asked for, or those the program brings.
+pub(super) fn read_models(settings: &Settings) -> Result<Vec<Model>, RunError> {
+    let Some(path) = &settings.model else {
+        return identify::shipped().map_err(RunError::ShippedModel);
+    };
+    let bytes = files::read(path)?;
+    let model =
+        Model::parse(&String::from_utf8_lossy(&bytes)).map_err(|error| RunError::Model {
+            path: path.clone(),
+            error,
+        })?;
+    Ok(vec![model])
+}
+
+/// Says which vowel each token sounds like; gives the settings for the record.
+pub(super) fn identify(
+    measured: &mut Measured<'_>,
+    models: &[Model],
+    settings: &Settings,
+    findings: &mut Vec<Finding>,
+) -> Value {
+    let known = measured.known();
+    let mut answers = identify_with(models, &known).into_iter();
+    measured.table.groups.identified = true;
+    let mut declined: BTreeMap<String, usize> = BTreeMap::new();
+    for (row, observation) in measured.table.rows.iter_mut().zip(measured.observations) {
+        row.identified = observation
+            .as_ref()
+            .and_then(|_| answers.next())
+            .map(|answer| {
+                if let Err(reason) = &answer.ranked {
+                    *declined.entry(reason.to_string()).or_default() += 1;
+                }
+                IdentifiedCells::of(&answer)
+            });
+    }
+    for (reason, count) in declined {
+        findings.push(Finding::new(
+            FindingKind::NotIdentified,
+            settings.labels_file.clone(),
+            format!("{count} measured vowels were not identified: {reason}"),
+            "`isophone train` makes a model for what a survey has",
+        ));
+    }
+    note_unknown_vowels(models, &known, settings, findings);
+    let described: Vec<Value> = models
+        .iter()
+        .map(|model| json!({ "model": model.name, "sha256": hash(model.to_text().as_bytes()) }))
+        .collect();
+    json!({
+        "model": models.iter().map(|model| model.name.as_str()).collect::<Vec<_>>().join(", then "),
+        "models": described,
+        "chosen by": match settings.model {
+            Some(_) => "the survey",
+            None => "the program: it brings them; each token gets the first that has an answer",
+        },
+    })
+}
+
+fn note_unknown_vowels(
+    models: &[Model],
+    known: &[Observation],
+    settings: &Settings,
+    findings: &mut Vec<Finding>,
+) {
+    let Some((first, others)) = models.split_first() else {
+        return;
+    };
+    for (vowel, count) in first.unknown_labels(known) {
+        if !others.iter().any(|model| model.vowels.contains(&vowel)) {
+            findings.push(Finding::new(
+                FindingKind::VowelInNoModel,
+                settings.labels_file.clone(),
+                format!(
+                    "no model knows the vowel `{vowel}` ({count} measured); each of them was \
+                     taken for the vowel the model knows that is most like it"
+                ),
+                "`isophone train` makes a model for what a survey has",
+            ));
+        }
     }
 }

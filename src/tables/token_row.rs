@@ -4,6 +4,7 @@ use std::borrow::Cow;
 
 use super::cell::{guard, optional, round_to};
 use super::column::{Column, Kind};
+use crate::identify::Identification;
 use crate::normalize::Normalization;
 use crate::tokens::{Observation, Token};
 use crate::vowel::Vowel;
@@ -337,6 +338,24 @@ impl NormalizedCells {
 }
 
 impl IdentifiedCells {
+    /// The cells of one answer; only the model's name where it declined.
+    pub fn of(answer: &Identification) -> Self {
+        let ranked = answer.ranked.as_deref().unwrap_or_default();
+        let vowel = |nth: usize| ranked.get(nth).map(|(vowel, _)| vowel.clone());
+        let probability = |nth: usize| {
+            ranked
+                .get(nth)
+                .map(|(_, p)| round_to(Kind::Probability, *p))
+        };
+        Self {
+            identified: vowel(0),
+            probability: probability(0),
+            second: vowel(1),
+            second_probability: probability(1),
+            model: answer.model.clone(),
+        }
+    }
+
     /// The names of the columns, in order.
     pub fn columns() -> Vec<Column> {
         IDENTIFIED.to_vec()
