@@ -129,4 +129,10 @@ fn tell_summary(summary: &RunSummary, voice: &Voice) {
     for (reason, count) in &counts.unmeasured {
         voice.say(format!("  {count} unmeasured: {reason}"));
     }
+    if let Some(agreement) = counts.identified {
+        voice.say(format!(
+            "{} vowels identified; of {} whose label the model knows, {} as labelled",
+            agreement.answered, agreement.comparable, agreement.agreeing
+        ));
+    }
 }

@@ -29,7 +29,7 @@ pub use finding::{Finding, FindingKind, Weight, count_findings};
 pub use measure::MeasuredSpeaker;
 pub use page::{page, recorded_group};
 pub use plan::{LabelCounts, Plan, PlannedVowel, RecordingPlan, SpeakerPlan};
-pub use run::{Goal, Progress, RunError, RunSummary, SurveyCounts, run};
+pub use run::{Agreement, Goal, Progress, RunError, RunSummary, SurveyCounts, run};
 pub use settings::{Asking, LabelUse, Settings, SettingsError, SpeakerFrom};
 
 /// Name of the file a survey can say things of itself in.

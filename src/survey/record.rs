@@ -69,6 +69,11 @@ pub(super) fn record(
             "unmeasured": counts.unmeasured,
             "tokens with doubts": counts.doubted,
             "doubts": counts.doubts,
+            "identified": counts.identified.map(|agreement| json!({
+                "answered": agreement.answered,
+                "with a label the model knows": agreement.comparable,
+                "as labelled": agreement.agreeing,
+            })),
         },
         "findings": { "counts": kinds, "list": listed },
     });

@@ -55,6 +55,19 @@ pub struct SurveyCounts {
     pub doubted: usize,
     /// Doubts by their text.
     pub doubts: BTreeMap<String, usize>,
+    /// What came of identifying, where that was done.
+    pub identified: Option<Agreement>,
+}
+
+/// How identified vowels agree with the labels.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub struct Agreement {
+    /// Tokens a model had an answer for.
+    pub answered: usize,
+    /// Of these, tokens whose label names a vowel the answering model knows.
+    pub comparable: usize,
+    /// Of these, tokens whose answer is the label's vowel.
+    pub agreeing: usize,
 }
 
 /// What came of a run.
@@ -146,8 +159,10 @@ pub fn run(
         let settings = &survey.settings;
         let normalized = stages::normalize(&mut measured, settings, &mut gathered.findings);
         record_of.settings.insert("normalize", normalized);
-        let identified = stages::identify(&mut measured, &models, settings, &mut gathered.findings);
+        let (identified, agreement) =
+            stages::identify(&mut measured, &models, settings, &mut gathered.findings);
         record_of.settings.insert("identify", identified);
+        gathered.counts.identified = Some(agreement);
     }
 
     tokens_file.append(&gathered.table.bytes())?;

@@ -4,15 +4,16 @@ use std::collections::BTreeMap;
 
 use serde_json::{Value, json};
 
-use super::RunError;
 use super::finding::{Finding, FindingKind};
 use super::measure::hash;
 use super::settings::Settings;
+use super::{Agreement, RunError};
 use crate::files;
 use crate::identify::{self, Model, identify_with};
 use crate::normalize::{Method, Normalization, advise};
 use crate::tables::{IdentifiedCells, NormalizedCells, TokenTable};
 use crate::tokens::Observation;
+use crate::vowel::Vowel;
 
 /// Rows of the token table with what later stages need of each; `None` where it is unmeasured.
 pub(super) struct Measured<'a> {
@@ -106,14 +107,16 @@ pub(super) fn read_models(settings: &Settings) -> Result<Vec<Model>, RunError> {
     Ok(vec![model])
 }
 
-/// Says which vowel each token sounds like; gives the settings for the record.
+/// Says which vowel each token sounds like; gives the settings for the record, and how the answers
+/// agree with the labels.
 pub(super) fn identify(
     measured: &mut Measured<'_>,
     models: &[Model],
     settings: &Settings,
     findings: &mut Vec<Finding>,
-) -> Value {
+) -> (Value, Agreement) {
     let known = measured.known();
+    let mut agreement = Agreement::default();
     let mut answers = identify_with(models, &known).into_iter();
     measured.table.groups.identified = true;
     let mut declined: BTreeMap<String, usize> = BTreeMap::new();
@@ -125,7 +128,9 @@ pub(super) fn identify(
                 if let Err(reason) = &answer.ranked {
                     *declined.entry(reason.to_string()).or_default() += 1;
                 }
-                IdentifiedCells::of(&answer)
+                let cells = IdentifiedCells::of(&answer);
+                agreement.count(row.vowel.as_ref(), &cells, models);
+                cells
             });
     }
     for (reason, count) in declined {
@@ -141,14 +146,31 @@ pub(super) fn identify(
         .iter()
         .map(|model| json!({ "model": model.name, "sha256": hash(model.to_text().as_bytes()) }))
         .collect();
-    json!({
+    let settings = json!({
         "model": models.iter().map(|model| model.name.as_str()).collect::<Vec<_>>().join(", then "),
         "models": described,
         "chosen by": match settings.model {
             Some(_) => "the survey",
             None => "the program: it brings them; each token gets the first that has an answer",
         },
-    })
+    });
+    (settings, agreement)
+}
+
+impl Agreement {
+    fn count(&mut self, label: Option<&Vowel>, cells: &IdentifiedCells, models: &[Model]) {
+        let Some(answer) = &cells.identified else {
+            return;
+        };
+        self.answered += 1;
+        let answering = models.iter().find(|model| model.name == cells.model);
+        if let Some(label) = label
+            && answering.is_some_and(|model| model.vowels.contains(label))
+        {
+            self.comparable += 1;
+            self.agreeing += usize::from(answer == label);
+        }
+    }
 }
 
 fn note_unknown_vowels(
