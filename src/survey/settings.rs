@@ -381,6 +381,21 @@ mod tests {
     }
 
     #[test]
+    fn the_survey_file_of_the_readme_is_one() {
+        let readme = include_str!("../../README.md");
+        let block: String = readme
+            .lines()
+            .skip_while(|line| *line != "    [recordings]")
+            .take_while(|line| line.is_empty() || line.starts_with("    "))
+            .map(|line| format!("{}\n", line.trim_start()))
+            .collect();
+        let settings = settings(&block).expect("settings");
+        assert_eq!(settings.label_columns.label, "phone");
+        assert_eq!(settings.group.as_deref(), Some("village"));
+        assert_eq!(settings.title.as_deref(), Some("The vowels of my valley"));
+    }
+
+    #[test]
     fn what_is_not_known_has_a_place() {
         let error = settings("[labels]\n\nnotations = \"ipa\"\n").expect_err("unknown");
         let SettingsError::Parse {
