@@ -98,7 +98,7 @@ pub(super) fn view(tally: &Tally, model: String) -> Option<ConfusionView> {
 fn cell(label: &Vowel, taken: &Vowel, count: usize, tokens: usize) -> Cell {
     let share = count as f64 / tokens as f64;
     let shade = match share {
-        s if s == 0.0 => 0,
+        0.0 => 0,
         s if s < 0.05 => 1,
         s if s < 0.20 => 2,
         s if s < 0.50 => 3,

@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use rayon::prelude::*;
 use sha2::{Digest, Sha256};
 
 use super::finding::{Finding, FindingKind};
@@ -68,60 +69,80 @@ fn analyse_recording(
     analysed: &mut Vec<Analysed>,
 ) {
     let sound = read_sound(settings, recording, measured);
-    let mut waveforms: BTreeMap<Channel, Result<Listened, AudioError>> = BTreeMap::new();
-    for vowel in &recording.vowels {
-        let asked = vowel
-            .row
-            .channel
-            .map_or(Channel::Loudest, Channel::Numbered);
-        let span = |channel: u16| {
-            vowel.row.span(
-                vowel.token.clone(),
-                plan.speaker.clone(),
-                channel,
-                vowel.vowel.clone(),
-            )
-        };
-        let listened = sound.as_ref().map(|sound| {
-            waveforms.entry(asked).or_insert_with(|| {
-                let number = sound.resolve(asked)?;
-                let waveform = sound.waveform(Channel::Numbered(number))?;
-                Ok(Listened {
-                    channel: number,
-                    conditions: Conditions::find(&waveform),
-                    waveform,
-                })
+    let listened = sound.map(|sound| listen(&sound, &recording.vowels));
+    let placed: Vec<(VowelSpan, Result<&Listened, Unmeasured>)> = recording
+        .vowels
+        .iter()
+        .map(|vowel| place(settings, plan, vowel, listened.as_ref(), measured))
+        .collect();
+    // Speakers are shared out among the threads; within one the vowels are as well, so that a
+    // survey of few speakers, and the last speaker of a large one, keep every thread at work.
+    analysed.par_extend(placed.into_par_iter().map(|(span, heard)| {
+        let analysis =
+            heard.and_then(|heard| formants::analyse(&heard.waveform, &heard.conditions, &span));
+        (span, analysis)
+    }));
+}
+
+type Channels = BTreeMap<Channel, Result<Listened, AudioError>>;
+
+/// The channel a label means.
+fn channel_of(vowel: &PlannedVowel) -> Channel {
+    vowel
+        .row
+        .channel
+        .map_or(Channel::Loudest, Channel::Numbered)
+}
+
+/// Every channel the labels of a recording mean.
+fn listen(sound: &Sound, vowels: &[PlannedVowel]) -> Channels {
+    let mut channels = Channels::new();
+    for vowel in vowels {
+        let asked = channel_of(vowel);
+        channels.entry(asked).or_insert_with(|| {
+            let number = sound.resolve(asked)?;
+            let waveform = sound.waveform(Channel::Numbered(number))?;
+            Ok(Listened {
+                channel: number,
+                conditions: Conditions::find(&waveform),
+                waveform,
             })
         });
-        match listened {
-            None => analysed.push((
-                span(vowel.row.channel.unwrap_or(1)),
-                Err(Unmeasured::NoRecording),
-            )),
-            Some(Err(error)) => {
-                measured.findings.push(Finding::new(
-                    FindingKind::ChannelMissing,
-                    format!("{} line {}", settings.labels_file, vowel.row.line),
-                    format!("`{}`: {error}", recording.name),
-                    error.hint(),
-                ));
-                analysed.push((
-                    span(vowel.row.channel.unwrap_or(1)),
-                    Err(Unmeasured::NoRecording),
-                ));
-            }
-            Some(Ok(Listened {
-                channel,
-                conditions,
-                waveform,
-            })) => {
-                let mut span = span(*channel);
-                let within = keep_within(settings, vowel, &mut span, waveform, measured);
-                let analysis = within.and_then(|()| formants::analyse(waveform, conditions, &span));
-                analysed.push((span, analysis));
-            }
-        }
     }
+    channels
+}
+
+/// The span of a vowel, and the channel it is to be looked for in or why there is none.
+fn place<'a>(
+    settings: &Settings,
+    plan: &SpeakerPlan,
+    vowel: &PlannedVowel,
+    listened: Option<&'a Channels>,
+    measured: &mut MeasuredSpeaker,
+) -> (VowelSpan, Result<&'a Listened, Unmeasured>) {
+    let mut span = vowel.row.span(
+        vowel.token.clone(),
+        plan.speaker.clone(),
+        vowel.row.channel.unwrap_or(1),
+        vowel.vowel.clone(),
+    );
+    let heard = match listened.and_then(|channels| channels.get(&channel_of(vowel))) {
+        None => Err(Unmeasured::NoRecording),
+        Some(Err(error)) => {
+            measured.findings.push(Finding::new(
+                FindingKind::ChannelMissing,
+                format!("{} line {}", settings.labels_file, vowel.row.line),
+                format!("`{}`: {error}", span.recording),
+                error.hint(),
+            ));
+            Err(Unmeasured::NoRecording)
+        }
+        Some(Ok(heard)) => {
+            span.channel = heard.channel;
+            keep_within(settings, vowel, &mut span, &heard.waveform, measured).map(|()| heard)
+        }
+    };
+    (span, heard)
 }
 
 fn read_sound(
