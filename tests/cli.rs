@@ -393,6 +393,23 @@ fn a_survey_file_that_is_wrong_has_a_place() {
 }
 
 #[test]
+fn a_model_that_is_none_is_told_before_any_work() {
+    let survey = Invented::new();
+    let model = survey.home.path().join("my.toml");
+    fs::write(&model, "A recipe for plum cake.").expect("written");
+    let ended = isophone(&[
+        "run".as_ref(),
+        survey.folder().as_os_str(),
+        "--out".as_ref(),
+        survey.out().as_os_str(),
+        "--model".as_ref(),
+        model.as_os_str(),
+    ]);
+    ended.says(2, &["my.toml`: not a model file", "`isophone train`"]);
+    assert!(!survey.out().exists());
+}
+
+#[test]
 fn names_that_spreadsheets_would_run_are_defused() {
     let survey = Invented::new();
     for file in ["labels.csv", "speakers.csv"] {
