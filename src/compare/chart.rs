@@ -33,7 +33,7 @@ pub struct SpeakerVowel {
 }
 
 /// How much room a speaker's vowels take.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Space {
     /// Place of the speaker.
     pub speaker: usize,
@@ -42,7 +42,20 @@ pub struct Space {
     /// Area of the convex hull of the vowel means, in square hertz at the reference size; `None`
     /// for fewer than three vowels.
     pub hull_hz2: Option<f64>,
+    /// The same over the vowels that every speaker has, which can be compared between speakers.
+    pub shared_hull_hz2: Option<f64>,
+    /// Area of the polygon over corner vowels in order, and these vowels.
+    pub polygon_hz2: Option<(&'static [&'static str], f64)>,
 }
+
+/// Corner vowels of polygons, the first set that a speaker has: four corners in accents with an
+/// open front vowel, three where there is one open vowel.
+const CORNERS: [&[&str]; 4] = [
+    &["i", "æ", "ɑ", "u"],
+    &["i", "a", "ɑ", "u"],
+    &["iː", "æ", "ɑː", "uː"],
+    &["i", "a", "u"],
+];
 
 /// The vowels of one group, or of all speakers for `None`.
 pub fn group_vowels(panel: &Panel, group: Option<usize>) -> Vec<GroupVowel> {
@@ -99,24 +112,42 @@ pub fn speaker_vowels(panel: &Panel) -> Vec<SpeakerVowel> {
     found
 }
 
-/// The vowel space of every speaker.
+/// The vowel space of every speaker, in the order of the panel.
 pub fn spaces(panel: &Panel) -> Vec<Space> {
-    let vowels = speaker_vowels(panel);
-    (0..panel.speakers.len())
-        .map(|speaker| {
-            let means: Vec<[f64; 2]> = vowels
-                .iter()
-                .filter(|v| v.speaker == speaker)
-                .map(|v| v.tokens.mean)
-                .collect();
-            let hull = convex_hull(&means);
+    let mut means = vec![vec![None; panel.vowels.len()]; panel.speakers.len()];
+    for v in speaker_vowels(panel) {
+        means[v.speaker][v.vowel] = Some(v.tokens.mean);
+    }
+    let shared: Vec<usize> = (0..panel.vowels.len())
+        .filter(|v| means.iter().all(|own| own[*v].is_some()))
+        .collect();
+    means
+        .iter()
+        .enumerate()
+        .map(|(speaker, own)| {
+            let all: Vec<[f64; 2]> = own.iter().flatten().copied().collect();
+            let common: Vec<[f64; 2]> = shared.iter().filter_map(|v| own[*v]).collect();
+            let corners = CORNERS.into_iter().find_map(|names| {
+                let points: Option<Vec<[f64; 2]>> = names
+                    .iter()
+                    .map(|n| own[panel.vowels.iter().position(|v| v.ipa() == *n)?])
+                    .collect();
+                Some((names, polygon_area(&points?)))
+            });
             Space {
                 speaker,
-                vowels: means.len(),
-                hull_hz2: (hull.len() >= 3).then(|| polygon_area(&hull)),
+                vowels: all.len(),
+                hull_hz2: hull_area(&all),
+                shared_hull_hz2: hull_area(&common),
+                polygon_hz2: corners,
             }
         })
         .collect()
+}
+
+fn hull_area(points: &[[f64; 2]]) -> Option<f64> {
+    let hull = convex_hull(points);
+    (hull.len() >= 3).then(|| polygon_area(&hull))
 }
 
 fn path(track: &[(f64, [f64; 2])]) -> Option<[[f64; 2]; 5]> {

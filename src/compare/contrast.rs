@@ -2,10 +2,13 @@
 
 use rayon::prelude::*;
 
-use super::difference::{Difference, PlaceTest, SpeakerMean, difference, place_test};
+use super::chart::spaces;
+use super::difference::{Difference, PlaceTest, differences, place_test};
 use super::holm::holm;
-use super::panel::{Measure, Panel};
+use super::panel::{MEASURES, Measure, Panel};
+
 use super::resample::Resampling;
+use super::sample::Side;
 
 /// A p of a permutation test that cannot go below this says nothing about a single vowel.
 pub const SIGNIFICANCE: f64 = 0.05;
@@ -19,6 +22,9 @@ pub struct Contrast {
     pub speakers: [usize; 2],
     /// One row for every vowel that both sides have.
     pub vowels: Vec<VowelContrast>,
+    /// Difference in the area of the vowel space over the vowels all speakers have, in square
+    /// hertz at the reference size.
+    pub space_hz2: Option<Difference>,
 }
 
 /// Two sides compared in one vowel.
@@ -33,9 +39,9 @@ pub struct VowelContrast {
     /// Distance of the two sides' means in hertz at the reference size.
     pub distance_hz: Option<f64>,
     /// The differences, in the order of [`Measure::ALL`].
-    pub measures: [Option<Difference>; 7],
+    pub measures: [Option<Difference>; MEASURES],
     /// Their p, each measure corrected over the vowels (Holm).
-    pub measures_p_holm: [Option<f64>; 7],
+    pub measures_p_holm: [Option<f64>; MEASURES],
 }
 
 impl VowelContrast {
@@ -47,7 +53,7 @@ impl VowelContrast {
     /// What can be said of the place of the vowel.
     pub fn verdict(&self) -> PlaceVerdict {
         match (&self.place, self.place_p_holm) {
-            (Some(test), _) if test.permutation.smallest_p > SIGNIFICANCE => PlaceVerdict::TooFew,
+            (Some(test), _) if test.test.smallest_p > SIGNIFICANCE => PlaceVerdict::TooFew,
             (Some(_), Some(p)) if p <= SIGNIFICANCE => PlaceVerdict::Different,
             (Some(_), Some(_)) => PlaceVerdict::NoEvidence,
             _ => PlaceVerdict::TooFew,
@@ -109,72 +115,69 @@ pub fn contrast(
     number: usize,
     resampling: &Resampling,
 ) -> Contrast {
-    let means: Vec<Vec<Vec<Option<f64>>>> = Measure::ALL.map(|m| panel.means(m)).into();
+    let placed: Vec<usize> = sides.concat();
+    let seats: Vec<Side> = placed
+        .iter()
+        .enumerate()
+        .map(|(n, s)| Side {
+            group: usize::from(n >= sides[0].len()),
+            stratum: panel.speakers[*s].stratum,
+        })
+        .collect();
+    let means = Measure::ALL.map(|m| panel.means(m));
     let mut vowels: Vec<VowelContrast> = (0..panel.vowels.len())
         .into_par_iter()
         .filter_map(|vowel| {
-            let piece = ((number * panel.vowels.len() + vowel) * 8) as u64;
-            vowel_contrast(panel, &means, sides, vowel, piece, resampling)
+            let values: Vec<Vec<Option<f64>>> = means
+                .iter()
+                .map(|m| placed.iter().map(|s| m[vowel][*s]).collect())
+                .collect();
+            let piece = ((number * (panel.vowels.len() + 1) + vowel) * 2) as u64;
+            vowel_contrast(vowel, &seats, &values, piece, resampling)
         })
         .collect();
     correct(&mut vowels);
+    let areas = spaces(panel);
+    let areas = placed
+        .iter()
+        .map(|s| areas.get(*s)?.shared_hull_hz2)
+        .collect();
+    let last = ((number * (panel.vowels.len() + 1) + panel.vowels.len()) * 2) as u64;
+    let space = differences(&seats, &[areas], resampling, &mut resampling.stream(last))
+        .pop()
+        .flatten();
     Contrast {
         names,
         speakers: sides.map(<[usize]>::len),
         vowels,
+        space_hz2: space,
     }
 }
 
 fn vowel_contrast(
-    panel: &Panel,
-    means: &[Vec<Vec<Option<f64>>>],
-    sides: [&[usize]; 2],
     vowel: usize,
+    seats: &[Side],
+    values: &[Vec<Option<f64>>],
     piece: u64,
     resampling: &Resampling,
 ) -> Option<VowelContrast> {
-    let placed: Vec<(usize, usize)> = sides
-        .iter()
-        .enumerate()
-        .flat_map(|(group, side)| side.iter().map(move |s| (*s, group)))
-        .collect();
-    let values = |measure: Measure| -> Vec<SpeakerMean<f64>> {
-        placed
-            .iter()
-            .filter_map(|(s, group)| {
-                let value = means[measure.index()][vowel][*s]?;
-                Some(SpeakerMean {
-                    value,
-                    group: *group,
-                    stratum: panel.speakers[*s].stratum,
-                })
-            })
-            .collect()
-    };
-    let measures: Vec<Option<Difference>> = Measure::ALL
-        .into_iter()
-        .map(|m| {
-            let mut random = resampling.stream(piece + m.index() as u64);
-            difference(&values(m), resampling, &mut random)
-        })
-        .collect();
-    let measures: [Option<Difference>; 7] = measures.try_into().ok()?;
+    let found = differences(seats, values, resampling, &mut resampling.stream(piece));
+    let measures: [Option<Difference>; MEASURES] = found.try_into().ok()?;
     if measures.iter().all(Option::is_none) {
         return None;
     }
-    let places: Vec<SpeakerMean<[f64; 2]>> = placed
+    let (f1, f2) = (&values[Measure::F1.index()], &values[Measure::F2.index()]);
+    let places: Vec<Option<[f64; 2]>> = f1
         .iter()
-        .filter_map(|(s, group)| {
-            let [f1, f2] = [Measure::F1, Measure::F2].map(|m| means[m.index()][vowel][*s]);
-            let stratum = panel.speakers[*s].stratum;
-            Some(SpeakerMean {
-                value: [f1?, f2?],
-                group: *group,
-                stratum,
-            })
-        })
+        .zip(f2)
+        .map(|(a, b)| Some([(*a)?, (*b)?]))
         .collect();
-    let place = place_test(&places, resampling, &mut resampling.stream(piece + 7));
+    let place = place_test(
+        seats,
+        &places,
+        resampling,
+        &mut resampling.stream(piece + 1),
+    );
     let gap = |m: Measure| measures[m.index()].as_ref().map(|d| d.value);
     let distance_hz = match (gap(Measure::F1AtReference), gap(Measure::F2AtReference)) {
         (Some(f1), Some(f2)) => Some(f1.hypot(f2)),
@@ -186,7 +189,7 @@ fn vowel_contrast(
         place_p_holm: None,
         distance_hz,
         measures,
-        measures_p_holm: [None; 7],
+        measures_p_holm: [None; MEASURES],
     })
 }
 
@@ -203,11 +206,11 @@ fn correct(vowels: &mut [VowelContrast]) {
             write(&mut vowels[*n], corrected);
         }
     };
-    apply(&|v| Some(v.place.as_ref()?.permutation.p), &|v, p| {
+    apply(&|v| Some(v.place.as_ref()?.test.p), &|v, p| {
         v.place_p_holm = Some(p)
     });
     for m in Measure::ALL {
-        apply(&|v| Some(v.measure(m)?.permutation.p), &|v, p| {
+        apply(&|v| Some(v.measure(m)?.test.p), &|v, p| {
             v.measures_p_holm[m.index()] = Some(p)
         });
     }

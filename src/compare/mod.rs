@@ -14,19 +14,20 @@ mod pairs;
 mod panel;
 mod plane;
 mod resample;
+mod sample;
+mod single;
 mod tally;
 
 pub use chart::{GroupVowel, Space, SpeakerVowel, group_vowels, spaces, speaker_vowels};
 pub use contrast::{Contrast, PlaceVerdict, SIGNIFICANCE, VowelContrast, contrast, contrasts};
-pub use difference::{
-    CONFIDENCE, Difference, PlaceTest, SpeakerMean, difference, mean_interval, place_test,
-};
+pub use difference::{CONFIDENCE, Difference, PlaceTest, differences, mean_interval, place_test};
 pub use findings::Findings;
 pub use holm::holm;
 pub use movement::{MOVEMENT_POINTS, Movement, between, convex_hull, polygon_area};
 pub use overlap::{Overlap, expected_pillai_if_merged, pillai_point_if_merged};
 pub use pairs::{APART_AFFINITY, GroupPair, SpeakerPair, Verdict, pairs};
-pub use panel::{Belonging, Measure, Panel, PanelSpeaker, PanelToken};
+pub use panel::{Belonging, MEASURES, Measure, Panel, PanelSpeaker, PanelToken};
 pub use plane::{Cloud, Ellipse};
-pub use resample::{Permutation, Resampling, gaussian, permute, quantile};
+pub use resample::{Resampling, Test, gaussian, permute, quantile};
+pub use sample::Side;
 pub use tally::{Fate, Reliability, Tally};

@@ -8,6 +8,9 @@ use crate::vowel::Vowel;
 
 use super::movement::Movement;
 
+/// How many measures there are.
+pub const MEASURES: usize = 10;
+
 /// What is compared, one number a token.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 pub enum Measure {
@@ -23,21 +26,46 @@ pub enum Measure {
     Vector,
     /// Length of the path from 20 to 80 %, in hertz at that size.
     Trajectory,
+    /// Length of the path over the time it takes, in hertz a second.
+    Rate,
+    /// F1 at 80 % less F1 at 20 %, in hertz at that size.
+    F1Change,
+    /// F2 at 80 % less F2 at 20 %; with [`Measure::F1Change`] the direction of the movement.
+    F2Change,
     /// Duration in seconds.
     Duration,
 }
 
 impl Measure {
     /// Every measure.
-    pub const ALL: [Self; 7] = [
+    pub const ALL: [Self; MEASURES] = [
         Self::F1,
         Self::F2,
         Self::F1AtReference,
         Self::F2AtReference,
         Self::Vector,
         Self::Trajectory,
+        Self::Rate,
+        Self::F1Change,
+        Self::F2Change,
         Self::Duration,
     ];
+
+    /// The column the measure has in tables, unit included.
+    pub fn column(self) -> &'static str {
+        match self {
+            Self::F1 => "f1_norm",
+            Self::F2 => "f2_norm",
+            Self::F1AtReference => "f1_hz",
+            Self::F2AtReference => "f2_hz",
+            Self::Vector => "vector_hz",
+            Self::Trajectory => "trajectory_hz",
+            Self::Rate => "rate_hz_per_s",
+            Self::F1Change => "f1_change_hz",
+            Self::F2Change => "f2_change_hz",
+            Self::Duration => "duration_s",
+        }
+    }
 
     /// Its place among [`Self::ALL`].
     pub fn index(self) -> usize {
@@ -55,7 +83,7 @@ pub struct PanelToken {
     /// Place of its vowel in [`Panel::vowels`].
     pub vowel: usize,
     /// Its values, in the order of [`Measure::ALL`].
-    pub values: [Option<f64>; 7],
+    pub values: [Option<f64>; MEASURES],
     /// F1, F2 in hertz at the reference size along the vowel, with the proportion.
     pub path: Vec<(f64, [f64; 2])>,
 }
@@ -284,7 +312,7 @@ fn values(
     path: &[(f64, [f64; 2])],
     normalization: &Normalization,
     reference: &Reference,
-) -> [Option<f64>; 7] {
+) -> [Option<f64>; MEASURES] {
     let [f1, f2, _] = normalization.normalize(o).value;
     let [hz1, hz2, _] = o.formant_hz;
     let movement = o
@@ -297,6 +325,9 @@ fn values(
         hz2.and_then(|hz| reference.hz(&o.speaker, 1, hz)),
         movement.map(|m| m.vector_hz),
         movement.map(|m| m.trajectory_hz),
+        movement.map(|m| m.rate_hz_per_s),
+        movement.map(|m| m.change_hz[0]),
+        movement.map(|m| m.change_hz[1]),
         o.duration_s,
     ]
 }

@@ -54,19 +54,21 @@ pub fn quantile(sorted: &[f64], share: f64) -> Option<f64> {
     Some(sorted[below] + (place - below as f64) * (sorted[above] - sorted[below]))
 }
 
-/// How a permutation test came out.
+/// How a test came out.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub struct Permutation {
-    /// Share of the arrangements at least as extreme as the one observed, which is one of them.
+pub struct Test {
+    /// Permutation tests: the share of arrangements at least as extreme as the one observed, which
+    /// is one of them.
     pub p: f64,
     /// The smallest p that so few speakers can give.
     pub smallest_p: f64,
 }
 
-/// Permutation test of two groups, speakers changing places within their stratum only.
+/// Permutation tests of two groups, speakers changing places within their stratum only.
 ///
-/// `groups` says for each speaker 0 or 1, `strata` who may change places with whom. `statistic`
-/// gives the size of a difference for an arrangement of `groups`.
+/// `groups` says for each speaker 0 or 1, `strata` who may change places with whom. `statistics`
+/// writes the sizes of `count` differences for an arrangement of `groups`; each is a test of its
+/// own, over the same arrangements.
 ///
 /// *Source*: Fisher 1935, The Design of Experiments; with drawn arrangements the observed one is
 /// counted in (Phipson & Smyth 2010, Stat. Appl. Genet. Mol. Biol. 9, 39).
@@ -75,39 +77,47 @@ pub fn permute(
     strata: &[usize],
     most: usize,
     random: &mut Pcg64,
-    statistic: impl Fn(&[usize]) -> f64,
-) -> Permutation {
+    count: usize,
+    mut statistics: impl FnMut(&[usize], &mut [f64]),
+) -> Vec<Test> {
+    let mut sizes = vec![0.0; count];
+    statistics(groups, &mut sizes);
     // Differences in the last digits are not differences.
-    let observed = statistic(groups) * (1.0 - 1e-9);
+    let observed: Vec<f64> = sizes.iter().map(|s| s * (1.0 - 1e-9)).collect();
+    let mut extreme = vec![0u64; count];
+    let mut look = |arrangement: &[usize], extreme: &mut [u64]| {
+        statistics(arrangement, &mut sizes);
+        for ((size, limit), extreme) in sizes.iter().zip(&observed).zip(extreme) {
+            *extreme += u64::from(size >= limit);
+        }
+    };
     let layers = layers(groups, strata);
     let all = layers.iter().fold(1.0, |all: f64, (members, seconds)| {
         all * combinations(members.len(), *seconds)
     });
     let mut arrangement = groups.to_vec();
-    if all <= most as f64 {
-        let (mut extreme, mut count) = (0u64, 0u64);
-        every(&layers, &mut arrangement, &mut |a| {
-            count += 1;
-            extreme += u64::from(statistic(a) >= observed);
-        });
-        return Permutation {
-            p: extreme as f64 / count as f64,
-            smallest_p: smallest(groups, all),
-        };
-    }
-    let mut extreme = 1;
-    for _ in 1..most {
-        for (members, _) in &layers {
-            for k in (1..members.len()).rev() {
-                arrangement.swap(members[k], members[random.random_range(0..=k)]);
+    let (looked, smallest_p) = if all <= most as f64 {
+        every(&layers, &mut arrangement, &mut |a| look(a, &mut extreme));
+        (all, smallest(groups, all))
+    } else {
+        extreme.fill(1);
+        for _ in 1..most {
+            for (members, _) in &layers {
+                for k in (1..members.len()).rev() {
+                    arrangement.swap(members[k], members[random.random_range(0..=k)]);
+                }
             }
+            look(&arrangement, &mut extreme);
         }
-        extreme += usize::from(statistic(&arrangement) >= observed);
-    }
-    Permutation {
-        p: extreme as f64 / most as f64,
-        smallest_p: 1.0 / most as f64,
-    }
+        (most as f64, 1.0 / most as f64)
+    };
+    extreme
+        .into_iter()
+        .map(|e| Test {
+            p: e as f64 / looked,
+            smallest_p,
+        })
+        .collect()
 }
 
 /// With equal groups every arrangement has a mirror image that is just as extreme.
@@ -216,18 +226,18 @@ mod tests {
     fn drawn_arrangements_come_near_the_exact_p() {
         let values = [1.2, 0.7, 1.9, 2.4, 1.1, 2.2, 3.1, 1.8, 2.9, 3.4, 2.0];
         let groups = [0, 0, 0, 0, 0, 1, 1, 1, 1, 1, 1];
-        let statistic = |g: &[usize]| {
+        let statistic = |g: &[usize], size: &mut [f64]| {
             let sum: f64 = values
                 .iter()
                 .zip(g)
                 .filter(|(_, g)| **g == 1)
                 .map(|(v, _)| v)
                 .sum();
-            (sum / 6.0 - (values.iter().sum::<f64>() - sum) / 5.0).abs()
+            size[0] = (sum / 6.0 - (values.iter().sum::<f64>() - sum) / 5.0).abs();
         };
         let mut random = Resampling::default().stream(3);
-        let exact = permute(&groups, &[0; 11], 462, &mut random, statistic);
-        let drawn = permute(&groups, &[0; 11], 461, &mut random, statistic);
+        let exact = permute(&groups, &[0; 11], 462, &mut random, 1, statistic)[0];
+        let drawn = permute(&groups, &[0; 11], 461, &mut random, 1, statistic)[0];
         assert_eq!(exact.smallest_p, 1.0 / 462.0);
         // Standard error of the drawn p about 0.009.
         assert!((exact.p - drawn.p).abs() < 0.035, "{exact:?} {drawn:?}");
@@ -237,11 +247,11 @@ mod tests {
     fn three_and_three_speakers_can_say_nothing_at_five_percent() {
         let mut random = Resampling::default().stream(0);
         let groups = [0, 0, 0, 1, 1, 1];
-        let apart = |g: &[usize]| {
+        let apart = |g: &[usize], size: &mut [f64]| {
             let sum: usize = g.iter().zip(0..).map(|(g, n)| g * n).sum();
-            (sum as f64 - 7.5).abs()
+            size[0] = (sum as f64 - 7.5).abs();
         };
-        let found = permute(&groups, &[0; 6], 1_000, &mut random, apart);
+        let found = permute(&groups, &[0; 6], 1_000, &mut random, 1, apart)[0];
         // Two of C(6,3) = 20 arrangements are that extreme.
         assert_eq!((found.p, found.smallest_p), (0.1, 0.1));
     }

@@ -235,7 +235,7 @@ fn row(findings: &Findings, v: &VowelContrast) -> Row {
         distance: or_dash(v.distance_hz, 0),
         p: v.place
             .as_ref()
-            .map_or_else(|| "–".to_owned(), |t| p_value(t.permutation.p)),
+            .map_or_else(|| "–".to_owned(), |t| p_value(t.test.p)),
         p_holm: v.place_p_holm.map_or_else(|| "–".to_owned(), p_value),
         movement: with_interval(Measure::Vector, 0, 1.0),
         duration: with_interval(Measure::Duration, 0, 1_000.0),
