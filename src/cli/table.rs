@@ -10,7 +10,7 @@ use crate::tables::{ObservationColumns, ObservationTable, TrackTable};
 #[derive(Debug, clap::Args)]
 pub(super) struct ColumnArguments {
     /// Takes COLUMN of the table for NAME (token, speaker, vowel, f0_hz, f1_hz, f2_hz, f3_hz,
-    /// f1_sd_hz, f2_sd_hz, f3_sd_hz, duration_s). With several tables it applies to those that have
+    /// f1_sd_hz, f2_sd_hz, f3_sd_hz, duration_s); `NAME=` says that the table has none. With several tables it applies to those that have
     /// COLUMN.
     #[arg(long = "column", value_name = "NAME=COLUMN")]
     renamed: Vec<String>,
@@ -45,7 +45,7 @@ impl ColumnArguments {
             .collect::<Result<_, _>>()?;
         for renaming in &self.renamed {
             let (_, column) = split(renaming)?;
-            if !all.iter().any(|bytes| has_column(bytes, column)) {
+            if !column.is_empty() && !all.iter().any(|bytes| has_column(bytes, column)) {
                 return Err(Failure::new(format!("no table has a column `{column}`"))
                     .hint(format!("it was asked for by `--column {renaming}`")));
             }
@@ -62,10 +62,9 @@ impl ColumnArguments {
     }
 
     fn parse_fitting(&self, path: &Path, bytes: &[u8]) -> Result<ObservationTable, Failure> {
-        let fitting = self
-            .renamed
-            .iter()
-            .filter(|renaming| split(renaming).is_ok_and(|(_, column)| has_column(bytes, column)));
+        let fitting = self.renamed.iter().filter(|renaming| {
+            split(renaming).is_ok_and(|(_, column)| column.is_empty() || has_column(bytes, column))
+        });
         self.parse_with(path, bytes, fitting)
     }
 

@@ -4,6 +4,7 @@ use rand::Rng;
 use rand_pcg::Pcg64;
 use rayon::prelude::*;
 
+use super::contrast::SIGNIFICANCE;
 use super::difference::mean_interval;
 use super::overlap::Overlap;
 use super::panel::Panel;
@@ -34,6 +35,9 @@ pub(super) const TELLING_POINT: f64 = 0.5;
 /// Fewest tokens of each vowel for a speaker to be looked at: two leave no spread to compare with.
 pub(super) const FEWEST_TOKENS: usize = 3;
 
+/// Fewest speakers whose sign flips can give a p of 0.05: 2/2⁶ is 0.03.
+const ABLE_TO_AGREE: usize = 6;
+
 impl Verdict {
     /// In words.
     pub fn text(self) -> &'static str {
@@ -51,7 +55,9 @@ impl Verdict {
          of tokens, and the affinity is below 0.5; overlapping: the trace is above the point, the \
          affinity is not below 0.5; no evidence of a difference: the trace is not above the point; \
          too few tokens to tell: fewer than three tokens of one of the two, or the trace is not \
-         above the point and the point itself is above 0.5"
+         above the point and the point itself is above 0.5; a group is called apart only if its \
+         speakers also agree about the direction (p of sign flips at most 0.05, where there are \
+         speakers enough to reach that), and overlapping otherwise"
     }
 
     fn of(pillai: f64, point: f64, affinity: Option<f64>) -> Self {
@@ -217,6 +223,12 @@ fn group_pair(
         .iter()
         .map(|d| (d[0] * difference_hz[0] + d[1] * difference_hz[1]) / length)
         .collect();
+    let common_direction_p = common_direction(&differences, resampling, random);
+    let disagree = common_direction_p > SIGNIFICANCE && differences.len() >= ABLE_TO_AGREE;
+    let verdict = match Verdict::of(pillai, point, affinity) {
+        Verdict::Apart if disagree => Verdict::Overlapping,
+        verdict => verdict,
+    };
     Some(GroupPair {
         vowels: [a, b],
         group,
@@ -228,8 +240,8 @@ fn group_pair(
             .then(|| mean_interval(&along, resampling, random))
             .flatten(),
         difference_hz,
-        common_direction_p: common_direction(&differences, resampling, random),
-        verdict: Verdict::of(pillai, point, affinity),
+        common_direction_p,
+        verdict,
         speakers,
     })
 }

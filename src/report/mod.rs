@@ -15,4 +15,5 @@ mod speakers;
 mod subject;
 
 pub use page::{Frame, Nature, ReportError, render};
+pub use sentences::found;
 pub use subject::Subject;

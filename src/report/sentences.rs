@@ -10,7 +10,7 @@ use super::pairs::{close, name};
 const MOST: usize = 6;
 
 /// What was found, most telling first.
-pub(super) fn found(findings: &Findings) -> Vec<String> {
+pub fn found(findings: &Findings) -> Vec<String> {
     let mut said = differences(findings);
     said.extend(mergers(findings));
     if said.is_empty() {

@@ -41,7 +41,7 @@ impl ObservationColumns {
         }
     }
 
-    /// Takes `column` for `name`.
+    /// Takes `column` for `name`; an empty `column` says that the table has none.
     ///
     /// # Errors
     /// [`UnknownName`] where `name` is none of [`Self::NAMES`].
@@ -97,6 +97,10 @@ impl ObservationTable {
         let records = Records::parse(bytes, "speaker,vowel,f1_hz,f2_hz,f3_hz")?;
         let place = |name: &str| -> Result<Option<usize>, TableError> {
             let column = columns.column(name);
+            if column.is_empty() {
+                // Asked for as "there is none", where a column of the usual name means another thing.
+                return Ok(None);
+            }
             if matches!(name, "speaker" | "f1_hz" | "f2_hz") || columns.is_asked(name) {
                 records.required(column).map(Some)
             } else {
