@@ -57,7 +57,7 @@ pub(super) fn difference(layout: &Layout, column: &Column) -> Difference {
         speakers: layout.speakers(),
         means: found.means,
         value,
-        interval: able.then(|| [value - reach, value + reach]),
+        interval: able.then_some([value - reach, value + reach]),
         test: Test {
             p,
             smallest_p: if able { 0.0 } else { 1.0 },
