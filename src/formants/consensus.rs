@@ -34,14 +34,18 @@ pub struct Hypothesis {
     pub spread: [f32; 3],
     /// Share of the frame's analyses that are gathered here.
     pub share: f32,
+    /// ln of F1, F2, F3 in hertz as the harmonics alone give them (discrete all-pole); NaN where the
+    /// voice is too low for it to matter or the harmonics do not determine them.
+    pub harmonic_ln_hz: [f32; 3],
     /// Belief before the speaker is known: log of the agreeing share less the bandwidth charge.
     pub belief: f32,
 }
 
-/// Gathers the readings of one frame, the most believed first.
+/// Gathers the readings of one frame, the most believed first, each with the indices of the
+/// readings gathered in it, again the most believed first.
 ///
 /// *Shape*: any number of readings; at most [`MOST`] hypotheses; none where there are no readings.
-pub(super) fn gather(readings: &[GridReading]) -> Vec<Hypothesis> {
+pub(super) fn gather(readings: &[GridReading]) -> Vec<(Hypothesis, Vec<usize>)> {
     let n = readings.len();
     let ln: Vec<[f64; 3]> = readings
         .iter()
@@ -84,7 +88,10 @@ pub(super) fn gather(readings: &[GridReading]) -> Vec<Hypothesis> {
         for &i in &near {
             taken[i] = true;
         }
-        out.push(summarise(readings, &ln, &near, belief[seed]));
+        let mut members = near;
+        let hypothesis = summarise(readings, &ln, &members, belief[seed]);
+        members.sort_by(|&a, &b| belief[b].total_cmp(&belief[a]).then(a.cmp(&b)));
+        out.push((hypothesis, members));
         if out.len() == MOST {
             break;
         }
@@ -104,6 +111,7 @@ fn summarise(
         f4_hz: f32::NAN,
         bandwidth_hz: [0.0; 3],
         spread: [0.0; 3],
+        harmonic_ln_hz: [f32::NAN; 3],
         share: members.len() as f32 / READINGS as f32,
         belief: belief as f32,
     };
@@ -137,4 +145,19 @@ fn median_of(storage: &mut Vec<f64>, values: impl Iterator<Item = f64>) -> f64 {
     }
     let middle = (storage.len() - 1) / 2;
     *storage.select_nth_unstable_by(middle, f64::total_cmp).1
+}
+
+/// Readings made again from harmonics, gathered to one value per formant: the median over those
+/// that stay within a quarter of the hypothesis.
+pub(super) fn gather_harmonic(hypothesis: &mut Hypothesis, remade: &[GridReading]) {
+    const NEAR: f64 = 0.25;
+    let mut column = Vec::with_capacity(remade.len());
+    for k in 0..3 {
+        let here = f64::from(hypothesis.ln_hz[k]);
+        let near = remade
+            .iter()
+            .map(|r| r.frequency_hz[k].ln())
+            .filter(|ln| (ln - here).abs() < NEAR);
+        hypothesis.harmonic_ln_hz[k] = median_of(&mut column, near) as f32;
+    }
 }

@@ -6,6 +6,7 @@
 pub mod consensus;
 mod grid;
 pub mod pitch;
+pub mod voice;
 
 use crate::audio::{ANALYSIS_RATE_HZ, Waveform};
 use crate::segments::VowelSpan;
@@ -42,6 +43,13 @@ pub fn proportion(index: usize) -> f64 {
 pub struct SpanAnalysis {
     /// One entry per analysis point.
     pub points: Vec<PointAnalysis>,
+}
+
+impl SpanAnalysis {
+    /// The pitch candidates of every point.
+    pub fn pitch(&self) -> Vec<&[PitchCandidate]> {
+        self.points.iter().map(|p| p.pitch.as_slice()).collect()
+    }
 }
 
 /// All that was found at one moment.
@@ -118,16 +126,32 @@ pub fn analyse(
     let mut grid = grid::Grid::new();
     let pitch = PitchSignal::new(samples, first, last);
     let mut readings = Vec::with_capacity(grid::READINGS);
-    let points: Vec<PointAnalysis> = (0..POINTS)
-        .map(|i| {
-            let time_s = span.start_s + proportion(i) * span.duration_s();
-            let centre = (time_s * ANALYSIS_RATE_HZ).round() as usize;
+    let times: Vec<f64> = (0..POINTS)
+        .map(|i| span.start_s + proportion(i) * span.duration_s())
+        .collect();
+    let centre = |time_s: f64| (time_s * ANALYSIS_RATE_HZ).round() as usize;
+    let candidates: Vec<_> = times.iter().map(|&t| pitch.candidates(centre(t))).collect();
+    let f0 = voice::contour(
+        &candidates.iter().map(Vec::as_slice).collect::<Vec<_>>(),
+        None,
+    );
+    let points: Vec<PointAnalysis> = times
+        .into_iter()
+        .zip(candidates)
+        .zip(f0)
+        .map(|((time_s, pitch), f0_hz)| {
             readings.clear();
-            grid.read(samples, centre, conditions.band_edge_hz, &mut readings);
+            grid.read(
+                samples,
+                centre(time_s),
+                conditions.band_edge_hz,
+                &mut readings,
+            );
+            let hypotheses = hypotheses(&mut grid, &readings, f0_hz.unwrap_or(0.0));
             PointAnalysis {
                 time_s,
-                hypotheses: consensus::gather(&readings),
-                pitch: pitch.candidates(centre),
+                hypotheses,
+                pitch,
             }
         })
         .collect();
@@ -135,4 +159,58 @@ pub fn analyse(
         return Err(Unmeasured::NoResonances);
     }
     Ok(SpanAnalysis { points })
+}
+
+/// F0 from which harmonics are far enough apart to pull a predicted F1, in hertz.
+const SPARSE_HZ: f64 = 140.0;
+
+/// Hypotheses of a frame that are read from harmonics too, and analyses remade for each.
+const REMADE_HYPOTHESES: usize = 3;
+const REMADE_READINGS: usize = 3;
+
+/// F0 above which only readings from harmonics are made, in hertz: from here on a band of five
+/// formants holds fewer than three harmonics per formant.
+const HARMONICS_ONLY_HZ: f64 = 300.0;
+
+/// Fewer readings from harmonics than this are no consensus; the band readings are used then.
+const FEWEST_REMADE: usize = 8;
+
+fn hypotheses(
+    grid: &mut grid::Grid,
+    readings: &[grid::GridReading],
+    f0_hz: f64,
+) -> Vec<Hypothesis> {
+    if f0_hz > HARMONICS_ONLY_HZ {
+        let lines = grid.lines(f0_hz);
+        let remade: Vec<_> = readings
+            .iter()
+            .filter(|r| r.order % 2 == 0)
+            .filter_map(|r| grid.remake(r, &lines))
+            .collect();
+        if remade.len() >= FEWEST_REMADE {
+            return consensus::gather(&remade)
+                .into_iter()
+                .map(|(mut h, _)| {
+                    h.harmonic_ln_hz = h.ln_hz;
+                    h
+                })
+                .collect();
+        }
+    }
+    let mut gathered = consensus::gather(readings);
+    if f0_hz > SPARSE_HZ {
+        let lines = grid.lines(f0_hz);
+        for (hypothesis, members) in gathered.iter_mut().take(REMADE_HYPOTHESES) {
+            let remade: Vec<_> = members
+                .iter()
+                .take(REMADE_READINGS)
+                .filter_map(|&m| grid.remake(&readings[m], &lines))
+                .collect();
+            consensus::gather_harmonic(hypothesis, &remade);
+        }
+    }
+    gathered
+        .into_iter()
+        .map(|(hypothesis, _)| hypothesis)
+        .collect()
 }

@@ -1,5 +1,7 @@
 //! Signal analysis without phonetics: windows, spectra, prediction, roots.
 
+pub mod discrete;
+pub mod harmonics;
 pub mod prediction;
 pub mod roots;
 pub mod spectrum;

@@ -1,9 +1,10 @@
 //! All spans of one speaker, read together, to measured tokens.
 
+mod error;
 mod path;
 mod reading;
 mod size;
-mod voice;
+mod value;
 
 pub use reading::read_speaker;
 

@@ -3,9 +3,10 @@
 
 use super::path::most_believable;
 use super::size::Size;
-use super::voice::contour;
 use super::{Doubt, FormantPoint, PROPORTIONS, Reading, Token, TrackPoint};
+use super::{error, value};
 use crate::formants::consensus::Hypothesis;
+use crate::formants::voice::contour;
 use crate::formants::{SpanAnalysis, Unmeasured, proportion};
 use crate::segments::VowelSpan;
 
@@ -44,7 +45,7 @@ pub fn read_speaker(spans: Vec<(VowelSpan, Result<SpanAnalysis, Unmeasured>)>) -
         .map(|(span, analysis)| {
             let reading = analysis.and_then(|analysis| {
                 let path = paths.next().ok_or(Unmeasured::NoResonances)?;
-                read_token(&span, &analysis, &path, median_hz)
+                read_token(&span, &analysis, &path, size, median_hz)
             });
             Token { span, reading }
         })
@@ -60,7 +61,7 @@ fn median_pitch(analyses: &[&SpanAnalysis]) -> Option<f64> {
     let mut medians: Vec<f64> = analyses
         .iter()
         .filter_map(|a| {
-            let mut values: Vec<f64> = contour(a, None).into_iter().flatten().collect();
+            let mut values: Vec<f64> = contour(&a.pitch(), None).into_iter().flatten().collect();
             median(&mut values)
         })
         .collect();
@@ -80,34 +81,18 @@ fn read_token(
     span: &VowelSpan,
     analysis: &SpanAnalysis,
     path: &[Option<usize>],
+    size: Size,
     median_hz: Option<f64>,
 ) -> Result<Reading, Unmeasured> {
-    let f0 = contour(analysis, median_hz);
-    let points: Vec<FormantPoint> = analysis
-        .points
-        .iter()
-        .zip(path)
-        .zip(&f0)
-        .map(|((point, chosen), &f0_hz)| {
-            let mut out = FormantPoint {
-                f0_hz,
-                ..FormantPoint::default()
-            };
-            if let Some(h) = chosen.map(|c| &point.hypotheses[c]) {
-                for k in 0..3 {
-                    let hz = f64::from(h.ln_hz[k]).exp();
-                    out.formant_hz[k] = Some(hz);
-                    out.bandwidth_hz[k] = Some(f64::from(h.bandwidth_hz[k]));
-                    // A first organ's error bar: the spread of the agreeing analyses (1.48 times
-                    // the median deviation is a standard deviation) and a tenth of F0 for the
-                    // harmonic spacing (Vallabha & Tuller 2002).
-                    let spread = 1.48 * f64::from(h.spread[k]) * hz;
-                    let spacing = 0.05 * f0_hz.unwrap_or(0.0);
-                    out.sd_hz[k] = Some((spread * spread + spacing * spacing + 25.0).sqrt());
-                }
-                out.formant_hz[3] = Some(f64::from(h.f4_hz)).filter(|f| f.is_finite());
+    let f0 = contour(&analysis.pitch(), median_hz);
+    let measured = value::along(&analysis.points, path, &f0, |h| belief(h, size));
+    let points: Vec<FormantPoint> = measured
+        .into_iter()
+        .map(|(mut point, evidence)| {
+            for k in 0..3 {
+                point.sd_hz[k] = point.formant_hz[k].map(|_| error::sd_hz(k, &evidence[k]));
             }
-            out
+            point
         })
         .collect();
     let track: Vec<TrackPoint> = PROPORTIONS

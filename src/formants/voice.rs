@@ -1,7 +1,7 @@
-//! The fundamental frequency along a token, and the speaker's own range of it.
+//! The fundamental frequency along a token, by dynamic programming over the candidates of its
+//! points, within the speaker's own range once that is known.
 
-use crate::formants::SpanAnalysis;
-use crate::formants::pitch::PitchCandidate;
+use super::pitch::PitchCandidate;
 
 /// A point whose best candidate repeats less well than this is unvoiced. Common practice puts the
 /// bound for cross-correlation between 0.3 and 0.5.
@@ -21,7 +21,9 @@ const VOICING_CHARGE: f64 = 0.2;
 
 /// F0 in hertz at every analysis point, `None` where unvoiced; `median_hz` is the speaker's, where
 /// it is known.
-pub(super) fn contour(analysis: &SpanAnalysis, median_hz: Option<f64>) -> Vec<Option<f64>> {
+///
+/// *Shape*: `points` holds the candidates of every point, the strongest first; as many values.
+pub fn contour(points: &[&[PitchCandidate]], median_hz: Option<f64>) -> Vec<Option<f64>> {
     let local = |c: &PitchCandidate| {
         let hz = f64::from(c.hz);
         let mut score = f64::from(c.strength) + OCTAVE_CHARGE * (hz / 100.0).log2();
@@ -31,20 +33,15 @@ pub(super) fn contour(analysis: &SpanAnalysis, median_hz: Option<f64>) -> Vec<Op
         }
         score
     };
-    let points = &analysis.points;
     // State 0 is unvoiced, state i + 1 is candidate i.
     let mut scores: Vec<f64> = Vec::new();
     let mut back: Vec<Vec<usize>> = Vec::with_capacity(points.len());
     for (t, point) in points.iter().enumerate() {
-        let states = point.pitch.len() + 1;
+        let states = point.len() + 1;
         let mut next = Vec::with_capacity(states);
         let mut from = Vec::with_capacity(states);
         for s in 0..states {
-            let own = if s == 0 {
-                VOICED
-            } else {
-                local(&point.pitch[s - 1])
-            };
+            let own = if s == 0 { VOICED } else { local(&point[s - 1]) };
             let (mut best, mut at) = (0.0, 0);
             if t > 0 {
                 best = f64::NEG_INFINITY;
@@ -53,8 +50,8 @@ pub(super) fn contour(analysis: &SpanAnalysis, median_hz: Option<f64>) -> Vec<Op
                         (0, 0) => 0.0,
                         (0, _) | (_, 0) => VOICING_CHARGE,
                         _ => {
-                            let from_hz = f64::from(points[t - 1].pitch[r - 1].hz);
-                            let to_hz = f64::from(point.pitch[s - 1].hz);
+                            let from_hz = f64::from(points[t - 1][r - 1].hz);
+                            let to_hz = f64::from(point[s - 1].hz);
                             CHANGE_CHARGE * (to_hz / from_hz).log2().abs()
                         }
                     };
@@ -75,7 +72,7 @@ pub(super) fn contour(analysis: &SpanAnalysis, median_hz: Option<f64>) -> Vec<Op
         .unwrap_or(0);
     for t in (0..points.len()).rev() {
         if state > 0 {
-            contour[t] = Some(f64::from(points[t].pitch[state - 1].hz));
+            contour[t] = Some(f64::from(points[t][state - 1].hz));
         }
         state = back[t][state];
     }
