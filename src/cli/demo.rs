@@ -41,7 +41,7 @@ pub(super) fn execute(arguments: &DemoArguments, voice: &Voice) -> Result<Outcom
     let result = arguments.out.join("result");
     survey::run(&survey, &result, Goal::Report, |_| {})
         .map_err(|error| Failure::new(&error).hint(error.hint()))?;
-    let (subject, _) = read_run(&result, None)?;
+    let (subject, _) = read_run(&result, None, None)?;
     let mut told = accuracy(&made, &subject);
     told.push_str(&villages(&made.put_in, &subject.findings));
     told.push_str(&format!(

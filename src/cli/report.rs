@@ -6,7 +6,7 @@ use super::frame::{Failure, Outcome, Voice};
 use crate::compare::Resampling;
 use crate::files;
 use crate::report::Subject;
-use crate::survey;
+use crate::survey::{self, Overrides, Survey};
 use crate::tables::{TokenTable, TrackTable};
 
 /// Makes the page to read from a run.
@@ -24,6 +24,10 @@ pub(super) struct ReportArguments {
     #[arg(long, value_name = "COLUMN")]
     by: Option<String>,
 
+    /// Folder of the survey, for pictures of the doubtful tokens.
+    #[arg(long, value_name = "FOLDER")]
+    survey: Option<PathBuf>,
+
     /// Where to write the page.
     #[arg(long, value_name = "FILE")]
     page: Option<PathBuf>,
@@ -31,7 +35,14 @@ pub(super) struct ReportArguments {
 
 /// Runs the verb.
 pub(super) fn execute(arguments: &ReportArguments, voice: &Voice) -> Result<Outcome, Failure> {
-    let (subject, record) = read_run(&arguments.folder, arguments.by.as_deref())?;
+    let survey = match &arguments.survey {
+        None => None,
+        Some(folder) => Some(
+            Survey::open(folder, &Overrides::default())
+                .map_err(|error| Failure::new(&error).hint(error.hint()))?,
+        ),
+    };
+    let (subject, record) = read_run(&arguments.folder, arguments.by.as_deref(), survey.as_ref())?;
     let page = survey::page(&subject, &record).map_err(Failure::new)?;
     let path = arguments
         .page
@@ -42,10 +53,11 @@ pub(super) fn execute(arguments: &ReportArguments, voice: &Voice) -> Result<Outc
     Ok(Outcome::AllDone)
 }
 
-/// The tables of a run and its record; `by` groups the speakers in place of the run's own column.
+/// The tables of a run and its record, with pictures where the survey is given; `by` groups the speakers in place of the run's own column.
 pub(super) fn read_run(
     folder: &Path,
     by: Option<&str>,
+    survey: Option<&Survey>,
 ) -> Result<(Subject, serde_json::Value), Failure> {
     let tokens_path = folder.join("tokens.csv");
     let tokens = TokenTable::parse(&files::read(&tokens_path)?)
@@ -71,6 +83,8 @@ pub(super) fn read_run(
         ))
         .hint("the columns of `speakers.csv` can be used"));
     }
-    let subject = Subject::gather(tokens, &tracks, by.as_deref(), Resampling::default());
+    let pictures = survey.map(|survey| survey::pictures_of(survey, &tokens, &tracks));
+    let mut subject = Subject::gather(tokens, &tracks, by.as_deref(), Resampling::default());
+    subject.pictures = pictures.unwrap_or_default();
     Ok((subject, record))
 }

@@ -38,8 +38,8 @@ pub(super) struct Line {
 /// What is drawn for one vowel of one group.
 #[derive(Debug, Clone, Serialize)]
 pub(super) struct Mark {
-    /// Number of the group's colour and shape.
-    pub(super) group: usize,
+    /// Number of the group's colour and shape; beyond all of them for everybody.
+    group: usize,
     x: String,
     y: String,
     /// Corners of the region of the mean.
@@ -77,6 +77,9 @@ pub(super) struct Chart {
     symbols: Vec<Symbol>,
     alt: String,
 }
+
+/// The number everybody together is drawn with: none of the groups'.
+pub(super) const EVERYBODY: usize = usize::MAX;
 
 /// Which outlines a chart has room for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -177,22 +180,36 @@ fn joined(points: impl Iterator<Item = (f64, f64)>) -> String {
         .join(" ")
 }
 
-/// The plane every chart of a report shares, so that charts can be laid over each other.
+/// The plane every chart of a report shares, so that charts can be laid over each other: around
+/// the groups' means, their regions and movement. Ellipses of tokens that one mistracked token
+/// blows up are cut off at its edge.
 pub(super) fn shared_plane(findings: &Findings) -> Option<Plane> {
     let all = findings.groups.iter().flatten().chain(&findings.everybody);
     let outlines = all.flat_map(|v| {
-        [
-            v.tokens.spread_ellipse(SHARE),
-            v.speakers.mean_ellipse(SHARE),
-        ]
-        .into_iter()
-        .flatten()
-        .flat_map(|e| e.outline(8))
-        .chain([v.tokens.mean, v.speakers.mean])
-        .collect::<Vec<_>>()
+        // Two thirds of the way out, so that most ellipses of tokens fit whole.
+        let inner = v.tokens.spread_ellipse(SHARE).map(|e| Ellipse {
+            along: e.along * 2.0 / 3.0,
+            across: e.across * 2.0 / 3.0,
+            ..e
+        });
+        let regions = v
+            .speakers
+            .mean_ellipse(SHARE)
+            .map(|e| e.outline(8))
+            .unwrap_or_default();
+        let typical = v.tokens.n >= 3 && inner.is_some_and(|e| e.along < 0.25 * e.centre[1]);
+        let inner = inner
+            .filter(|_| typical)
+            .map(|e| e.outline(8))
+            .unwrap_or_default();
+        regions
+            .into_iter()
+            .chain(inner)
+            .chain(v.path.iter().copied())
+            .chain([v.speakers.mean])
+            .collect::<Vec<_>>()
     });
-    let speakers = findings.speakers.iter().map(|v| v.tokens.mean);
-    Plane::around(outlines.chain(speakers).filter(speech))
+    Plane::around(outlines.filter(speech))
 }
 
 /// A small plane around the speakers' own means.

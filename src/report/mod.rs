@@ -10,10 +10,12 @@ mod numbers;
 mod order;
 mod page;
 mod pairs;
+mod picture;
 mod sentences;
 mod speakers;
 mod subject;
 
 pub use page::{Frame, Nature, ReportError, render};
+pub use picture::{Picture, PicturePoint};
 pub use sentences::found;
 pub use subject::Subject;

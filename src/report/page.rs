@@ -7,12 +7,13 @@ use minijinja::{Environment, Value, context};
 use serde::Serialize;
 use thiserror::Error;
 
-use super::chart::{Chart, Outlines, chart, shared_plane};
+use super::chart::{Chart, EVERYBODY, Outlines, chart, shared_plane};
 use super::confusion::{self, ConfusionView};
 use super::contrasts::{self, ContrastView};
 use super::numbers::{or_dash, plain};
 use super::order::shown;
 use super::pairs::{self, PairsView};
+use super::picture::PictureView;
 use super::sentences;
 use super::speakers::{self, SpeakersView};
 use super::subject::Subject;
@@ -83,6 +84,7 @@ struct PageView<'a> {
     groups: Vec<GroupView>,
     group_column: Option<&'a str>,
     overview: Option<Chart>,
+    overlaid: bool,
     side_by_side: Vec<Chart>,
     vowels: Vec<VowelRow>,
     contrasts: Vec<ContrastView>,
@@ -92,6 +94,7 @@ struct PageView<'a> {
     reasons: &'a BTreeMap<String, usize>,
     doubtful: Vec<Doubtful>,
     doubtful_count: usize,
+    pictured: usize,
     most_doubts: usize,
     speakers: SpeakersView,
     left_out: &'a BTreeMap<String, String>,
@@ -126,6 +129,7 @@ fn view<'a>(subject: &'a Subject, frame: &'a Frame) -> PageView<'a> {
         groups: group_views(findings),
         group_column: subject.group_column.as_deref(),
         overview: overview(findings),
+        overlaid: overlaid(findings),
         side_by_side: side_by_side(findings),
         vowels: vowel_rows(findings),
         contrasts: contrasts::views(findings),
@@ -135,6 +139,7 @@ fn view<'a>(subject: &'a Subject, frame: &'a Frame) -> PageView<'a> {
         reasons: &findings.tally.reasons,
         doubtful: doubtful(subject),
         doubtful_count: findings.tally.doubtful,
+        pictured: subject.pictures.len(),
         most_doubts: MOST_DOUBTS,
         speakers: speakers::view(subject),
         left_out: &findings.panel.left_out,
@@ -179,7 +184,7 @@ fn overview(findings: &Findings) -> Option<Chart> {
             .map(|(g, v)| (g, v.as_slice()))
             .collect()
     } else {
-        vec![(0, findings.everybody.as_slice())]
+        vec![(EVERYBODY, findings.everybody.as_slice())]
     };
     let name = match overlaid.len() {
         1 => "all speakers".to_owned(),
@@ -203,7 +208,7 @@ fn side_by_side(findings: &Findings) -> Vec<Chart> {
             findings,
             plane,
             name,
-            &[(0, &findings.everybody)],
+            &[(EVERYBODY, &findings.everybody)],
             Outlines::Tokens,
         )];
     }
@@ -293,6 +298,7 @@ struct Doubtful {
     vowel: String,
     formants: [String; 3],
     doubts: String,
+    picture: Option<PictureView>,
 }
 
 fn doubtful(subject: &Subject) -> Vec<Doubtful> {
@@ -300,7 +306,16 @@ fn doubtful(subject: &Subject) -> Vec<Doubtful> {
         let reading = row.reading.as_ref().ok()?;
         (!reading.doubts.is_empty()).then_some((row, reading))
     });
-    rows.take(MOST_DOUBTS)
+    let mut rows: Vec<_> = rows.collect();
+    // Those with a picture and those with more doubts come first.
+    rows.sort_by_key(|(row, reading)| {
+        (
+            !subject.pictures.contains_key(&row.token),
+            usize::MAX - reading.doubts.len(),
+        )
+    });
+    rows.into_iter()
+        .take(MOST_DOUBTS)
         .map(|(row, reading)| Doubtful {
             token: row.token.clone(),
             speaker: row.speaker.clone(),
@@ -314,6 +329,7 @@ fn doubtful(subject: &Subject) -> Vec<Doubtful> {
                 (f, _) => or_dash(f, 0),
             }),
             doubts: reading.doubts.join("; "),
+            picture: subject.pictures.get(&row.token).map(PictureView::of),
         })
         .collect()
 }

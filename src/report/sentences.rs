@@ -20,47 +20,63 @@ pub fn found(findings: &Findings) -> Vec<String> {
 }
 
 fn differences(findings: &Findings) -> Vec<String> {
-    let mut said = Vec::new();
+    let mut strong: Vec<(f64, String)> = Vec::new();
+    let mut few = Vec::new();
+    let mut alike = Vec::new();
     for contrast in &findings.contrasts {
         let [first, second] = &contrast.names;
-        let strongest = told(findings, contrast);
-        for (vowel, v) in strongest.iter().take(MOST) {
-            let p = v.place_p_holm.map_or_else(String::new, |p| {
-                format!(
-                    "; p {} after correction for {}",
-                    equal(p),
-                    counted(contrast.vowels.len(), "vowel", "vowels")
-                )
-            });
-            said.push(format!(
-                "/{vowel}/ in {second} against {first} is {}{p}.",
-                words(v)
-            ));
-        }
-        if strongest.len() > MOST {
-            said.push(format!(
-                "{} more vowels differ between {second} and {first}; they are in the table.",
-                strongest.len() - MOST
-            ));
-        }
-        let few = contrast
+        let vowels = contrast.vowels.len();
+        let differing = told(findings, contrast);
+        if contrast
             .vowels
             .iter()
-            .filter(|v| v.verdict() == PlaceVerdict::TooFew)
-            .count();
-        if few == contrast.vowels.len() {
-            said.push(format!(
+            .all(|v| v.verdict() == PlaceVerdict::TooFew)
+        {
+            few.push(format!(
                 "{} and {} speakers are too few to say anything about a difference between {second} \
                  and {first}: no arrangement of so few could be called unusual.",
                 contrast.speakers[1], contrast.speakers[0]
             ));
-        } else if strongest.is_empty() {
+        } else if differing.is_empty() {
+            alike.push(second.clone());
+        }
+        for (vowel, v) in differing {
+            let p = v.place_p_holm.map_or_else(String::new, |p| {
+                format!(
+                    "; p {} after correction for {}",
+                    equal(p),
+                    counted(vowels, "vowel", "vowels")
+                )
+            });
+            let sentence = format!("/{vowel}/ in {second} against {first} is {}{p}.", words(v));
+            strong.push((v.distance_hz.unwrap_or(0.0), sentence));
+        }
+    }
+    strong.sort_by(|a, b| b.0.total_cmp(&a.0));
+    let more = strong.len().saturating_sub(MOST);
+    let mut said: Vec<String> = strong.into_iter().take(MOST).map(|(_, s)| s).collect();
+    if more > 0 {
+        said.push(format!(
+            "{} smaller; the tables below have them.",
+            counted(more, "more difference is", "more differences are")
+        ));
+    }
+    match alike.len() {
+        0 => {}
+        1 if findings.contrasts.len() == 1 => {
+            let [first, second] = &findings.contrasts[0].names;
             said.push(format!(
                 "No vowel of {second} can be told from that of {first}: what differences there are, \
                  chance arrangements of the speakers give too."
             ));
         }
+        _ => said.push(format!(
+            "No vowel of {} can be told from that of the others: what differences there are, chance \
+             arrangements of the speakers give too.",
+            listed(&alike)
+        )),
     }
+    said.extend(few);
     said
 }
 

@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use super::picture::Picture;
 use crate::compare::{Belonging, Fate, Findings, Resampling};
 use crate::normalize::{Method, advise};
 use crate::tables::{TokenRow, TokenTable, TrackTable};
@@ -16,6 +17,8 @@ pub struct Subject {
     pub group_column: Option<String>,
     /// What was found.
     pub findings: Findings,
+    /// Pictures of tokens, by their names.
+    pub pictures: BTreeMap<String, Picture>,
 }
 
 impl Subject {
@@ -65,6 +68,7 @@ impl Subject {
             group_column: column.map(|c| table.speaker_columns[c].clone()),
             table,
             findings,
+            pictures: BTreeMap::new(),
         }
     }
 

@@ -10,6 +10,7 @@ mod folder;
 mod in_order;
 mod measure;
 mod page;
+mod pictures;
 mod plan;
 mod record;
 mod run;
@@ -27,7 +28,7 @@ use crate::tables::{SpeakerTable, TableError};
 
 pub use finding::{Finding, FindingKind, Weight, count_findings};
 pub use measure::MeasuredSpeaker;
-pub use page::{page, recorded_group};
+pub use page::{page, pictures_of, recorded_group};
 pub use plan::{LabelCounts, Plan, PlannedVowel, RecordingPlan, SpeakerPlan};
 pub use run::{Agreement, Goal, Progress, RunError, RunSummary, SurveyCounts, run};
 pub use settings::{Asking, LabelUse, Settings, SettingsError, SpeakerFrom};

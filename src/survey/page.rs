@@ -1,8 +1,13 @@
 //! The page of a run: what the record says of it, and the findings.
 
+use std::collections::BTreeMap;
+
 use serde_json::Value;
 
-use crate::report::{Frame, Nature, ReportError, Subject, render};
+use super::Survey;
+use super::pictures::{Drawn, draw};
+use crate::report::{Frame, Nature, Picture, ReportError, Subject, render};
+use crate::tables::{TokenTable, TrackRow, TrackTable};
 
 /// The bytes of `report.html`.
 ///
@@ -10,6 +15,22 @@ use crate::report::{Frame, Nature, ReportError, Subject, render};
 /// [`ReportError`], a defect of the program.
 pub fn page(subject: &Subject, record: &Value) -> Result<String, ReportError> {
     render(subject, &frame(subject, record))
+}
+
+/// Pictures of the doubtful tokens of a run, from the survey it was a run of.
+pub fn pictures_of(
+    survey: &Survey,
+    table: &TokenTable,
+    tracks: &TrackTable,
+) -> BTreeMap<String, Picture> {
+    let tracks = tracks.by_token();
+    let mut drawn = Drawn::default();
+    for row in &table.rows {
+        let track = tracks.get(row.token.as_str()).into_iter().flatten();
+        let track: Vec<TrackRow> = track.map(|t| (*t).clone()).collect();
+        drawn.consider(row, &track);
+    }
+    draw(survey, &drawn)
 }
 
 /// The speaker column a recorded run was grouped by.

@@ -7,6 +7,7 @@ use thiserror::Error;
 
 use super::finding::Finding;
 use super::page::page;
+use super::pictures::{Drawn, draw};
 use super::record::{Stages, record};
 use super::stages::{self, Measured};
 use super::{MeasuredSpeaker, Survey};
@@ -202,7 +203,8 @@ pub fn run(
         let record = serde_json::from_slice(&record).map_err(RunError::Record)?;
         let observations: Vec<Observation> = gathered.observations.into_iter().flatten().collect();
         let group = survey.group.as_deref();
-        let subject = Subject::of(gathered.table, &observations, group, Resampling::default());
+        let mut subject = Subject::of(gathered.table, &observations, group, Resampling::default());
+        subject.pictures = draw(survey, &gathered.drawn);
         let path = out.join("report.html");
         files::write(&path, page(&subject, &record)?.as_bytes())?;
         written.insert(0, path);
@@ -224,6 +226,7 @@ struct Gathered {
     findings: Vec<Finding>,
     hashes: BTreeMap<String, String>,
     recordings: BTreeSet<String>,
+    drawn: Drawn,
 }
 
 impl Gathered {
@@ -240,6 +243,7 @@ impl Gathered {
             findings: survey.findings.clone(),
             hashes: survey.hashes.clone(),
             recordings: BTreeSet::new(),
+            drawn: Drawn::default(),
         }
     }
 
@@ -257,6 +261,7 @@ impl Gathered {
             // From the row and not from the token: what later stages see is what the table holds,
             // so that they give the same when they are run on the table by themselves.
             self.observations.push(row.observation(points));
+            self.drawn.consider(&row, &track_rows);
             self.count(&row);
             self.table.rows.push(row);
         }
