@@ -4,7 +4,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::path::{Path, PathBuf};
 
 use super::frame::{Failure, Outcome, Voice};
-use super::table::{ColumnArguments, add_tracks};
+use super::table::{ColumnArguments, of_speakers, read_table_or_run};
 use crate::compare::{Belonging, Findings, PlaceVerdict, Resampling, contrast};
 use crate::files;
 use crate::normalize::{Method, advise};
@@ -82,7 +82,11 @@ enum Show {
 
 /// Runs the verb.
 pub(super) fn execute(arguments: &CompareArguments, voice: &Voice) -> Result<Outcome, Failure> {
-    let table = read(arguments)?;
+    let table = read_table_or_run(
+        &arguments.columns,
+        &arguments.table,
+        arguments.tracks.as_deref(),
+    )?;
     let observations: Vec<Observation> = table.observations.iter().flatten().cloned().collect();
     if observations.is_empty() {
         return Err(Failure::new(format!(
@@ -155,63 +159,11 @@ pub(super) fn execute(arguments: &CompareArguments, voice: &Voice) -> Result<Out
     })
 }
 
-fn read(arguments: &CompareArguments) -> Result<ObservationTable, Failure> {
-    let folder = arguments.table.is_dir();
-    let path = if folder {
-        arguments.table.join("tokens.csv")
-    } else {
-        arguments.table.clone()
-    };
-    let mut table = arguments.columns.read(&path)?;
-    let tracks = arguments
-        .tracks
-        .clone()
-        .or_else(|| folder.then(|| arguments.table.join("tracks.csv")));
-    if let Some(tracks) = tracks {
-        add_tracks(&mut table, &tracks)?;
-    }
-    Ok(table)
-}
-
 /// The column a run was grouped by, where the table is a run's folder.
 fn recorded_group(folder: &Path) -> Option<String> {
     let record = files::read(&folder.join("run.json")).ok()?;
     let record: serde_json::Value = serde_json::from_slice(&record).ok()?;
     crate::survey::recorded_group(&record).map(str::to_owned)
-}
-
-/// One value of each speaker in a column; a speaker with several values is an error, since groups
-/// are of speakers.
-fn of_speakers(
-    table: &ObservationTable,
-    column: &str,
-) -> Result<BTreeMap<String, String>, Failure> {
-    let cells = table.column(column).map_err(|error| {
-        Failure::new(error.to_string())
-            .hint(format!("the columns are `{}`", table.header().join("`, `")))
-    })?;
-    let mut values: BTreeMap<String, String> = BTreeMap::new();
-    for (observation, cell) in table.observations.iter().zip(cells) {
-        let Some(observation) = observation else {
-            continue;
-        };
-        if cell.is_empty() {
-            continue;
-        }
-        let known = values
-            .entry(observation.speaker.clone())
-            .or_insert_with(|| cell.to_owned());
-        if known != cell {
-            return Err(Failure::new(format!(
-                "speaker `{}` has two values of `{column}`: `{known}` and `{cell}`",
-                observation.speaker
-            ))
-            .hint(
-                "groups are groups of speakers; use a column that each speaker has one value of",
-            ));
-        }
-    }
-    Ok(values)
 }
 
 fn belonging(

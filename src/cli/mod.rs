@@ -3,6 +3,7 @@
 //! One file per verb, each with its arguments and `execute`; [`frame`] has what they share: how
 //! to speak, what an end and a failure are.
 
+mod check;
 mod compare;
 mod demo;
 mod frame;
@@ -54,6 +55,7 @@ enum Verb {
     Train(train::TrainArguments),
     Identify(identify::IdentifyArguments),
     Compare(compare::CompareArguments),
+    Check(check::CheckArguments),
     Norms(norms::NormsArguments),
     Report(report::ReportArguments),
     Demo(demo::DemoArguments),
@@ -83,6 +85,7 @@ pub fn main() -> ExitCode {
         Verb::Train(arguments) => train::execute(arguments, &voice),
         Verb::Identify(arguments) => identify::execute(arguments, &voice),
         Verb::Compare(arguments) => compare::execute(arguments, &voice),
+        Verb::Check(arguments) => check::execute(arguments, &voice),
         Verb::Norms(arguments) => norms::execute(arguments, &voice),
         Verb::Report(arguments) => report::execute(arguments, &voice),
         Verb::Demo(arguments) => demo::execute(arguments, &voice),

@@ -1,5 +1,6 @@
 //! What the verbs on tables share: which columns stand for what, and the reading.
 
+use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
 use super::frame::Failure;
@@ -113,4 +114,64 @@ pub(super) fn add_tracks(table: &mut ObservationTable, path: &Path) -> Result<()
     table
         .add_tracks(&tracks)
         .map_err(|error| Failure::of_table(path, &error))
+}
+
+/// Reads a table of observations with its tracks, or `tokens.csv` and `tracks.csv` of a run's
+/// folder.
+///
+/// # Errors
+/// A failure where a file cannot be read or is no such table.
+pub(super) fn read_table_or_run(
+    columns: &ColumnArguments,
+    path: &Path,
+    tracks: Option<&Path>,
+) -> Result<ObservationTable, Failure> {
+    let folder = path.is_dir();
+    let tokens = if folder {
+        path.join("tokens.csv")
+    } else {
+        path.to_owned()
+    };
+    let mut table = columns.read(&tokens)?;
+    let tracks = tracks
+        .map(Path::to_owned)
+        .or_else(|| folder.then(|| path.join("tracks.csv")));
+    if let Some(tracks) = tracks {
+        add_tracks(&mut table, &tracks)?;
+    }
+    Ok(table)
+}
+
+/// One value of each speaker in a column; a speaker with several values is an error, since groups
+/// are of speakers.
+pub(super) fn of_speakers(
+    table: &ObservationTable,
+    column: &str,
+) -> Result<BTreeMap<String, String>, Failure> {
+    let cells = table.column(column).map_err(|error| {
+        Failure::new(error.to_string())
+            .hint(format!("the columns are `{}`", table.header().join("`, `")))
+    })?;
+    let mut values: BTreeMap<String, String> = BTreeMap::new();
+    for (observation, cell) in table.observations.iter().zip(cells) {
+        let Some(observation) = observation else {
+            continue;
+        };
+        if cell.is_empty() {
+            continue;
+        }
+        let known = values
+            .entry(observation.speaker.clone())
+            .or_insert_with(|| cell.to_owned());
+        if known != cell {
+            return Err(Failure::new(format!(
+                "speaker `{}` has two values of `{column}`: `{known}` and `{cell}`",
+                observation.speaker
+            ))
+            .hint(
+                "groups are groups of speakers; use a column that each speaker has one value of",
+            ));
+        }
+    }
+    Ok(values)
 }

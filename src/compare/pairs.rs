@@ -60,7 +60,7 @@ impl Verdict {
          speakers enough to reach that), and overlapping otherwise"
     }
 
-    fn of(pillai: f64, point: f64, affinity: Option<f64>) -> Self {
+    pub(super) fn of(pillai: f64, point: f64, affinity: Option<f64>) -> Self {
         if pillai <= point {
             if point > TELLING_POINT {
                 Self::TooFew

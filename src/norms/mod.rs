@@ -3,6 +3,7 @@
 //! Nothing here ever touches a measurement. A table is for holding speakers against, after their
 //! size has been taken out.
 
+mod own;
 mod parse;
 mod shipped;
 
@@ -11,6 +12,7 @@ use std::collections::BTreeSet;
 use crate::tokens::Observation;
 use crate::vowel::Vowel;
 
+pub use own::Origin;
 pub use parse::NormsError;
 pub use shipped::{NAMES, shipped};
 

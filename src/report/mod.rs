@@ -6,6 +6,7 @@
 mod chart;
 mod confusion;
 mod contrasts;
+mod handout;
 mod numbers;
 mod order;
 mod page;
@@ -15,6 +16,7 @@ mod sentences;
 mod speakers;
 mod subject;
 
+pub use handout::handout;
 pub use page::{Frame, Nature, ReportError, render};
 pub use picture::{Picture, PicturePoint};
 pub use sentences::found;

@@ -30,7 +30,7 @@ mod tracks;
 
 pub use cell::{decimals, format_number, guard, round_to, unguard};
 pub use column::{Column, Kind, describe};
-pub use comparison::{differences_table, pairs_table, spaces_table, vowels_table};
+pub use comparison::{checks_table, differences_table, pairs_table, spaces_table, vowels_table};
 pub use error::TableError;
 pub use observations::{ObservationColumns, ObservationTable, UnknownName};
 pub use speakers::SpeakerTable;
