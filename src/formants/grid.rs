@@ -10,9 +10,10 @@ use std::sync::LazyLock;
 
 use crate::audio::ANALYSIS_RATE_HZ;
 use crate::signal::discrete::{self, Line};
+use crate::signal::factors::Factors;
+use crate::signal::follow::FactorFinder;
 use crate::signal::harmonics;
 use crate::signal::prediction::{BandAutocorrelation, levinson};
-use crate::signal::roots::RootFinder;
 use crate::signal::spectrum::PowerSpectrum;
 use crate::signal::window;
 
@@ -108,7 +109,28 @@ pub(super) struct Grid {
     emphasised: [Vec<f32>; EMPHASIS_KNEES_HZ.len()],
     /// Lags of every band of the frame read last.
     lags: [[f64; HIGHEST_ORDER + 1]; CEILINGS_HZ.len()],
-    roots: RootFinder,
+    /// The polynomials of every order of the frame read last, with their factors.
+    rows: Vec<Row>,
+    finder: FactorFinder,
+}
+
+/// The polynomials of one order in all bands.
+#[derive(Debug)]
+struct Row {
+    order: usize,
+    /// `order + 1` coefficients for each band, NaN where the band is degenerate or outside.
+    polynomials: Vec<f64>,
+    factors: Vec<Option<Factors>>,
+}
+
+impl Row {
+    fn new(order: usize, bands: usize) -> Self {
+        Self {
+            order,
+            polynomials: vec![f64::NAN; (order + 1) * bands],
+            factors: vec![None; bands],
+        }
+    }
 }
 
 impl Grid {
@@ -119,7 +141,10 @@ impl Grid {
             power: Vec::new(),
             emphasised: Default::default(),
             lags: [[0.0; HIGHEST_ORDER + 1]; CEILINGS_HZ.len()],
-            roots: RootFinder::default(),
+            rows: (LOWEST_ORDER..=HIGHEST_ORDER)
+                .map(|order| Row::new(order, CEILINGS_HZ.len()))
+                .collect(),
+            finder: FactorFinder::default(),
         }
     }
 
@@ -141,21 +166,37 @@ impl Grid {
             emphasised.clear();
             emphasised.extend(self.power.iter().zip(weights).map(|(p, w)| p * w));
         }
+        for row in &mut self.rows {
+            row.polynomials.fill(f64::NAN);
+        }
         for (index, band) in TABLES.bands.iter().enumerate() {
             if band.ceiling_hz() > band_edge_hz {
                 continue;
             }
             let lags = &mut self.lags[index];
             band.lags(&self.emphasised[index % EMPHASIS_KNEES_HZ.len()], lags);
-            let roots = &mut self.roots;
+            let rows = &mut self.rows;
             // A degenerate band (silence, a pure tone) simply adds no reading.
             let _ = levinson(lags, HIGHEST_ORDER, |order, a, _| {
-                if order >= LOWEST_ORDER
-                    && let Some(reading) = resonances(a, index, roots)
+                if order >= LOWEST_ORDER {
+                    rows[order - LOWEST_ORDER].polynomials[a.len() * index..][..a.len()]
+                        .copy_from_slice(a);
+                }
+            });
+        }
+        // From the factors of the frame before: most have moved little.
+        for row in &mut self.rows {
+            self.finder
+                .follow(row.order, &row.polynomials, &mut row.factors);
+        }
+        for band in 0..CEILINGS_HZ.len() {
+            for row in &self.rows {
+                if let Some(reading) =
+                    row.factors[band].and_then(|f| resonances(&f, row.order, band))
                 {
                     out.push(reading);
                 }
-            });
+            }
         }
     }
 
@@ -187,7 +228,9 @@ impl Grid {
         .ok()?;
         let a = &mut a[..=reading.order];
         discrete::fit(a, &emphasised, CEILINGS_HZ[reading.band]).ok()?;
-        resonances(a, reading.band, &mut self.roots)
+        let mut factors = [self.rows[reading.order - LOWEST_ORDER].factors[reading.band]];
+        self.finder.follow(reading.order, a, &mut factors);
+        resonances(&factors[0]?, reading.order, reading.band)
     }
 }
 
@@ -198,16 +241,16 @@ impl Default for Grid {
 }
 
 /// The lowest resonances of a prediction polynomial of one band.
-fn resonances(a: &[f64], band: usize, roots: &mut RootFinder) -> Option<GridReading> {
+fn resonances(factors: &Factors, order: usize, band: usize) -> Option<GridReading> {
     let ceiling_hz = CEILINGS_HZ[band];
     let mut found = [(f64::NAN, f64::NAN); 16];
     let mut count = 0;
-    for z in roots.upper_half(a).ok()? {
-        if z.im <= 0.0 {
+    for pair in factors.pairs() {
+        let Some(angle) = pair.angle() else {
             continue;
-        }
-        let frequency_hz = z.im.atan2(z.re) * ceiling_hz / PI;
-        let bandwidth_hz = (z.re * z.re + z.im * z.im).ln().abs() * ceiling_hz / PI;
+        };
+        let frequency_hz = angle * ceiling_hz / PI;
+        let bandwidth_hz = pair.product.ln().abs() * ceiling_hz / PI;
         if bandwidth_hz < WIDEST_HZ && frequency_hz > EDGE_HZ && frequency_hz < ceiling_hz - EDGE_HZ
         {
             found[count] = (frequency_hz, bandwidth_hz);
@@ -220,7 +263,7 @@ fn resonances(a: &[f64], band: usize, roots: &mut RootFinder) -> Option<GridRead
     found[..count].sort_by(|x, y| x.0.total_cmp(&y.0));
     let mut reading = GridReading {
         band,
-        order: a.len() - 1,
+        order,
         frequency_hz: [f64::NAN; RESONANCES],
         bandwidth_hz: [f64::NAN; RESONANCES],
     };
