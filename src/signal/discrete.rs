@@ -9,7 +9,7 @@
 
 use std::f64::consts::PI;
 
-use super::prediction::{Degenerate, MAX_ORDER};
+use super::prediction::{Degenerate, MAX_ORDER, levinson};
 
 /// One spectral line.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -39,67 +39,54 @@ const SIZE: usize = MAX_ORDER + 1;
 /// are fewer than the model's freedom needs (half the order and two) or do not determine it.
 pub fn fit(a: &mut [f64], lines: &[Line], ceiling_hz: f64) -> Result<(), Degenerate> {
     let size = a.len();
-    let used: Vec<Line> = lines
-        .iter()
-        .copied()
-        .filter(|l| l.hz < ceiling_hz)
-        .collect();
-    let n = used.len();
+    let used = || lines.iter().filter(|l| l.hz < ceiling_hz);
+    let n = used().count();
     if !(2..=SIZE).contains(&size) || n < size.div_ceil(2) + 1 {
         return Err(Degenerate);
     }
-    let mean = used.iter().map(|l| l.power).sum::<f64>() / n as f64;
+    let mean = used().map(|l| l.power).sum::<f64>() / n as f64;
     if !(mean > 0.0 && mean.is_finite()) {
         return Err(Degenerate);
     }
-    // cos and sin of every line at every lag, line by line.
-    let mut turns = vec![(0.0, 0.0); n * size];
-    for (line, row) in used.iter().zip(turns.chunks_exact_mut(size)) {
-        let (sin, cos) = (PI * line.hz / ceiling_hz).sin_cos();
-        let (mut c, mut s) = (1.0, 0.0);
-        for turn in row {
-            *turn = (c, s);
-            (c, s) = (c * cos - s * sin, s * cos + c * sin);
-        }
+    let mut groups = vec![Group::EMPTY; n.div_ceil(LANES)];
+    for (k, line) in used().enumerate() {
+        groups[k / LANES].set(k % LANES, line, ceiling_hz, mean, n as f64);
     }
-    let mut lags = [0.0; SIZE];
-    for (line, row) in used.iter().zip(turns.chunks_exact(size)) {
-        let weight = line.power / mean / n as f64;
-        for (lag, &(c, _)) in lags.iter_mut().zip(row) {
-            *lag += weight * c;
-        }
+    let mut lags = Sums::new();
+    for group in &groups {
+        group.add_waves(&group.power, &[0.0; LANES], &mut lags, size);
     }
+    let mut lags = lags.total();
     lags[0] *= 1.0 + RIDGE;
-    let factor = Cholesky::of_toeplitz(&lags[..size])?;
+    let inverse = Inverse::of_toeplitz(&lags[..size])?;
 
     // Scale the start so that the mean of power times |A|^2 is one.
-    let gain = (used
-        .iter()
-        .zip(turns.chunks_exact(size))
-        .map(|(line, row)| {
-            let (re, im) = response(a, row);
-            line.power / mean * (re * re + im * im)
-        })
-        .sum::<f64>()
-        / n as f64)
-        .sqrt();
+    let mut gain = 0.0;
+    for group in &groups {
+        let (re, im) = group.response(a);
+        for lane in 0..LANES {
+            gain += group.power[lane] * (re[lane] * re[lane] + im[lane] * im[lane]);
+        }
+    }
+    let gain = gain.sqrt();
     let mut model = [0.0; SIZE];
     for (m, c) in model.iter_mut().zip(a.iter()) {
         *m = c / gain;
     }
     for _ in 0..ITERATIONS {
         // The impulse response of the model, sampled at the lines only.
-        let mut h = [0.0; SIZE];
-        for row in turns.chunks_exact(size) {
-            let (re, im) = response(&model[..size], row);
-            let scale = 1.0 / ((re * re + im * im) * n as f64);
-            let (re, im) = (re * scale, -im * scale);
-            for (h, &(c, s)) in h.iter_mut().zip(row) {
-                *h += re * c + im * s;
+        let mut h = Sums::new();
+        for group in &groups {
+            let (mut re, mut im) = group.response(&model[..size]);
+            for lane in 0..LANES {
+                let scale = group.share[lane] / (re[lane] * re[lane] + im[lane] * im[lane]);
+                re[lane] *= scale;
+                im[lane] *= scale;
             }
+            group.add_waves(&re, &im, &mut h, size);
         }
-        factor.solve(&mut h[..size]);
-        for (m, new) in model[..size].iter_mut().zip(&h) {
+        let new = inverse.times(&h.total());
+        for (m, new) in model[..size].iter_mut().zip(&new) {
             *m += STEP * (new - *m);
         }
     }
@@ -113,60 +100,132 @@ pub fn fit(a: &mut [f64], lines: &[Line], ceiling_hz: f64) -> Result<(), Degener
     Ok(())
 }
 
-/// `A(e^jw)` of one line.
-fn response(a: &[f64], row: &[(f64, f64)]) -> (f64, f64) {
-    let (mut re, mut im) = (0.0, 0.0);
-    for (m, &(c, s)) in a.iter().zip(row) {
-        re += m * c;
-        im -= m * s;
-    }
-    (re, im)
+/// Lines worked on side by side.
+const LANES: usize = 8;
+
+type Lanes = [f64; LANES];
+
+/// Some of the lines, at angles `w` on the unit circle.
+#[derive(Debug, Clone, Copy)]
+struct Group {
+    cos: Lanes,
+    sin: Lanes,
+    /// Share of each line in the mean over all; zero where there is no line.
+    share: Lanes,
+    /// Power relative to the mean power, times the share.
+    power: Lanes,
 }
 
-/// Lower triangular factor of a symmetric positive definite matrix.
-struct Cholesky {
+impl Group {
+    const EMPTY: Self = Self {
+        cos: [0.0; LANES],
+        sin: [1.0; LANES],
+        share: [0.0; LANES],
+        power: [0.0; LANES],
+    };
+
+    fn set(&mut self, lane: usize, line: &Line, ceiling_hz: f64, mean: f64, n: f64) {
+        let (sin, cos) = (PI * line.hz / ceiling_hz).sin_cos();
+        self.cos[lane] = cos;
+        self.sin[lane] = sin;
+        self.share[lane] = 1.0 / n;
+        self.power[lane] = line.power / mean / n;
+    }
+
+    /// The complex conjugate of `A(e^jw)` at every line: the polynomial with `e^jw` in place of
+    /// `z^-1`, by division by `z^2 - 2 cos(w) z + 1`.
+    #[inline(always)]
+    fn response(&self, a: &[f64]) -> (Lanes, Lanes) {
+        let (mut u, mut v) = ([0.0; LANES], [0.0; LANES]);
+        for &c in a.iter().rev() {
+            for lane in 0..LANES {
+                let before = u[lane];
+                u[lane] = 2.0 * self.cos[lane] * before + v[lane];
+                v[lane] = c - before;
+            }
+        }
+        for lane in 0..LANES {
+            v[lane] += u[lane] * self.cos[lane];
+            u[lane] *= self.sin[lane];
+        }
+        (v, u)
+    }
+
+    /// Adds `re cos(l w) + im sin(l w)` of every line to sum `l`, by the recursion of the cosine:
+    /// the value at `l + 1` is `2 cos(w)` times that at `l`, less that at `l - 1`.
+    #[inline(always)]
+    fn add_waves(&self, re: &Lanes, im: &Lanes, sums: &mut Sums, size: usize) {
+        let mut here = *re;
+        let mut before: Lanes =
+            std::array::from_fn(|lane| re[lane] * self.cos[lane] - im[lane] * self.sin[lane]);
+        for sum in &mut sums.0[..size] {
+            for lane in 0..LANES {
+                sum[lane] += here[lane];
+                let next = 2.0 * self.cos[lane] * here[lane] - before[lane];
+                before[lane] = here[lane];
+                here[lane] = next;
+            }
+        }
+    }
+}
+
+/// One sum per lag, the lines of each lane still apart.
+struct Sums([Lanes; SIZE]);
+
+impl Sums {
+    fn new() -> Self {
+        Self([[0.0; LANES]; SIZE])
+    }
+
+    fn total(&self) -> [f64; SIZE] {
+        self.0.map(|lanes| lanes.iter().sum())
+    }
+}
+
+/// The inverse of a symmetric positive definite Toeplitz matrix.
+struct Inverse {
     size: usize,
     rows: [[f64; SIZE]; SIZE],
 }
 
-impl Cholesky {
+impl Inverse {
+    /// *Source*: W. F. Trench (1964), An algorithm for the inversion of finite Toeplitz matrices,
+    /// J. SIAM 12, 515-522, in the form with the prediction polynomial and its residual (from
+    /// memory; tested by multiplying back).
     fn of_toeplitz(lags: &[f64]) -> Result<Self, Degenerate> {
         let size = lags.len();
+        let order = size - 1;
+        let mut a = [0.0; SIZE];
+        let mut residual = 0.0;
+        levinson(lags, order, |n, c, error| {
+            if n == order {
+                a[..size].copy_from_slice(c);
+                residual = error;
+            }
+        })?;
         let mut rows = [[0.0; SIZE]; SIZE];
-        for i in 0..size {
-            for j in 0..=i {
-                let mut sum = lags[i - j];
-                for k in 0..j {
-                    sum -= rows[i][k] * rows[j][k];
-                }
-                if i == j {
-                    if sum <= 0.0 || sum.is_nan() {
-                        return Err(Degenerate);
-                    }
-                    rows[i][i] = sum.sqrt();
-                } else {
-                    rows[i][j] = sum / rows[j][j];
-                }
+        for j in 0..size {
+            rows[0][j] = a[j] / residual;
+            rows[j][0] = rows[0][j];
+        }
+        for i in 1..size {
+            for j in i..size {
+                let change = a[i] * a[j] - a[size - i] * a[size - j];
+                rows[i][j] = rows[i - 1][j - 1] + change / residual;
+                rows[j][i] = rows[i][j];
             }
         }
         Ok(Self { size, rows })
     }
 
-    fn solve(&self, x: &mut [f64]) {
-        for i in 0..self.size {
-            let mut sum = x[i];
-            for k in 0..i {
-                sum -= self.rows[i][k] * x[k];
+    fn times(&self, x: &[f64; SIZE]) -> [f64; SIZE] {
+        let mut out = [0.0; SIZE];
+        for (row, x) in self.rows[..self.size].iter().zip(x) {
+            for (out, r) in out.iter_mut().zip(row) {
+                *out += r * x;
             }
-            x[i] = sum / self.rows[i][i];
         }
-        for i in (0..self.size).rev() {
-            let mut sum = x[i];
-            for k in i + 1..self.size {
-                sum -= self.rows[k][i] * x[k];
-            }
-            x[i] = sum / self.rows[i][i];
-        }
+        out
     }
 }
 
@@ -242,6 +301,22 @@ mod tests {
         let after = (f1(&a) - 450.0).abs();
         assert!(before > 10.0, "ordinary prediction was off by {before}");
         assert!(after < 1.0, "discrete all-pole is off by {after}");
+    }
+
+    #[test]
+    fn an_inverse_times_its_matrix_is_the_identity() {
+        let lags = [2.0, 1.1, 0.3, -0.6, -0.4, 0.1];
+        let inverse = Inverse::of_toeplitz(&lags).expect("positive definite");
+        for column in 0..lags.len() {
+            let mut x = [0.0; SIZE];
+            for (row, x) in x[..lags.len()].iter_mut().enumerate() {
+                *x = lags[row.abs_diff(column)];
+            }
+            for (row, y) in inverse.times(&x)[..lags.len()].iter().enumerate() {
+                let expected = f64::from(u8::from(row == column));
+                assert!((y - expected).abs() < 1e-12, "{row} {column}: {y}");
+            }
+        }
     }
 
     #[test]
