@@ -16,6 +16,7 @@ mod run;
 mod survey;
 mod table;
 mod train;
+mod train_text;
 
 use std::process::ExitCode;
 

@@ -1,25 +1,27 @@
 //! `isophone train`.
 
 use std::collections::BTreeMap;
-use std::fmt::Write;
 use std::path::{Path, PathBuf};
 
 use sha2::{Digest, Sha256};
 
 use super::frame::{Failure, Outcome, Voice};
 use super::table::{ColumnArguments, add_tracks};
+use super::train_text;
 use crate::files;
 use crate::identify::{
-    Accuracy, Evaluation, Feature, Kind, Model, Samples, TrainingRecord, USUAL_PENALTY, evaluate,
+    Evaluation, Feature, Kind, Model, Samples, TrainingRecord, USUAL_MODES, USUAL_PENALTY, evaluate,
 };
 use crate::normalize::Method;
+use crate::tables::ObservationTable;
 use crate::tokens::Observation;
 use crate::vowel::Vowel;
 
 /// Trains a model on tables of labelled vowels and tests it on speakers it has not seen.
 ///
-/// The accuracy, its interval over speakers and the confusion table are always those of speakers
-/// left out of the training. Without `--out`, nothing is written: the test alone is made.
+/// Accuracy, interval, confusion and reliability are always those of speakers left out of the
+/// training. Without `--out` nothing is written: the test alone is made. With several classifiers,
+/// normalizations or sets of features, all combinations are tested and set side by side.
 #[derive(Debug, clap::Args)]
 pub(super) struct TrainArguments {
     /// Tables with a row per labelled vowel token.
@@ -38,26 +40,37 @@ pub(super) struct TrainArguments {
     #[arg(long)]
     name: Option<String>,
 
-    /// The columns the classifier sees, separated by commas: f0_norm, f1_norm, f2_norm, f3_norm,
-    /// f1_norm@0.2 and the like, ln_duration.
-    #[arg(long, default_value = "f1_norm,f2_norm,f3_norm", value_delimiter = ',')]
+    /// What the classifier sees, separated by commas: f0_norm, f1_norm, f2_norm, f3_norm,
+    /// f1_norm@0.2 and the like, ln_duration (less the speaker's mean), ln_seconds. May be given
+    /// several times, to compare. F1 to F3 otherwise, and F0 with a template.
+    #[arg(long, value_name = "LIST")]
     features: Vec<String>,
 
-    /// How the size of speakers is taken out.
-    #[arg(long, default_value = "lobanov")]
-    normalization: String,
+    /// How the size of speakers is taken out; several to compare. `lobanov` otherwise, and `ln`
+    /// with a template, which finds the size itself.
+    #[arg(long, value_delimiter = ',', value_name = "METHOD")]
+    normalization: Vec<String>,
 
-    /// logistic, linear or quadratic.
-    #[arg(long, default_value = "logistic")]
-    classifier: String,
+    /// logistic, linear, quadratic or template; several to compare.
+    #[arg(long, default_value = "logistic", value_delimiter = ',')]
+    classifier: Vec<String>,
+
+    /// Takes these vowels only.
+    #[arg(long, value_delimiter = ',', value_name = "VOWEL")]
+    vowels: Vec<String>,
 
     /// Penalty on the slopes of a logistic classifier.
     #[arg(long, default_value_t = USUAL_PENALTY)]
     penalty: f64,
 
-    /// Leaves out all speakers with the same value of this column at a time, instead of one speaker.
-    #[arg(long, value_name = "COLUMN")]
-    leave_out_by: Option<String>,
+    /// Number of modes of a template.
+    #[arg(long, default_value_t = USUAL_MODES)]
+    modes: usize,
+
+    /// What is left out at a time: one `speaker`, one `token`, or all speakers with the same value
+    /// of a column.
+    #[arg(long, default_value = "speaker", value_name = "speaker|token|COLUMN")]
+    leave_out: String,
 
     /// Seed of the interval over speakers.
     #[arg(long, default_value_t = 1)]
@@ -67,23 +80,19 @@ pub(super) struct TrainArguments {
     columns: ColumnArguments,
 }
 
+/// One combination to be tested.
+pub(super) struct Candidate {
+    /// The classifier.
+    pub(super) kind: Kind,
+    /// The normalization.
+    pub(super) method: Method,
+    /// The features.
+    pub(super) features: Vec<Feature>,
+}
+
 /// Runs the verb.
 pub(super) fn execute(arguments: &TrainArguments, voice: &Voice) -> Result<Outcome, Failure> {
-    let kind = match arguments.classifier.parse().map_err(Failure::new)? {
-        Kind::Logistic { .. } => Kind::Logistic {
-            penalty: arguments.penalty,
-        },
-        other => other,
-    };
-    let method: Method = arguments
-        .normalization
-        .parse()
-        .map_err(|error| Failure::new(error).hint("`isophone normalize --methods` lists them"))?;
-    let features: Vec<Feature> = arguments
-        .features
-        .iter()
-        .map(|name| name.trim().parse().map_err(Failure::new))
-        .collect::<Result<_, _>>()?;
+    let candidates = candidates(arguments)?;
     if arguments.tracks.len() > arguments.tables.len() {
         return Err(Failure::new("more tracks than tables").hint("give one for each table"));
     }
@@ -91,147 +100,179 @@ pub(super) fn execute(arguments: &TrainArguments, voice: &Voice) -> Result<Outco
     for ((table, _), tracks) in read.iter_mut().zip(&arguments.tracks) {
         add_tracks(table, tracks)?;
     }
+    let wanted: Vec<Vowel> = arguments
+        .vowels
+        .iter()
+        .map(|v| Vowel::from_ipa(v))
+        .collect();
     let observations: Vec<Vec<Observation>> = read
         .iter()
-        .map(|(table, _)| table.observations.iter().flatten().cloned().collect())
+        .map(|(table, _)| {
+            let all = table.observations.iter().flatten();
+            let taken = |o: &&Observation| {
+                wanted.is_empty() || o.vowel.as_ref().is_some_and(|v| wanted.contains(v))
+            };
+            all.filter(taken).cloned().collect()
+        })
         .collect();
     let slices: Vec<&[Observation]> = observations.iter().map(Vec::as_slice).collect();
-    let samples = Samples::gather(&features, &method, &slices);
-    if samples.rows.is_empty() {
-        let reasons: Vec<&String> = samples.left_out.keys().collect();
-        return Err(Failure::new("no labelled token has all the features")
-            .hint(format!("what is missing: {reasons:?}")));
+    let tested = candidates
+        .iter()
+        .map(|candidate| test(candidate, arguments, &read, &slices))
+        .collect::<Result<Vec<_>, _>>()?;
+    if let ([candidate], [tested]) = (candidates.as_slice(), tested.as_slice()) {
+        voice.give(train_text::one(tested, &arguments.leave_out, arguments.seed).as_bytes())?;
+        if let Some(out) = &arguments.out {
+            write_model(arguments, candidate, tested, &read, out)?;
+            voice.say(format!("wrote `{}`", out.display()));
+        }
+        return Ok(if tested.samples.lacking.is_empty() {
+            Outcome::AllDone
+        } else {
+            Outcome::SomethingLeftOut
+        });
     }
-
-    let groups = match &arguments.leave_out_by {
-        None => None,
-        Some(column) => Some(speaker_groups(&read, &arguments.tables, column, &samples)?),
-    };
-    let evaluation = match &groups {
-        None => evaluate(kind, &samples, &|speaker| speaker),
-        Some((_, of_speaker)) => evaluate(kind, &samples, &|speaker| of_speaker[speaker]),
+    if arguments.out.is_some() {
+        return Err(Failure::new("several combinations cannot be one model")
+            .hint("give `--out` with one classifier, one normalization and one set of features"));
     }
-    .map_err(Failure::new)?;
-    let held_out = match &arguments.leave_out_by {
-        None => "one speaker at a time".to_owned(),
-        Some(column) => format!("all speakers of one `{column}` at a time"),
-    };
-    let accuracy = evaluation.accuracy(arguments.seed);
-    let mut text = format!("held out: {held_out}\n{}", told(&accuracy));
-    if let Some((names, of_speaker)) = &groups {
-        text.push_str(&by_group(&evaluation, names, of_speaker));
-    }
-    text.push_str(&confusion_text(&evaluation));
-    for (reason, count) in &samples.left_out {
-        let _ = writeln!(
-            text,
-            "left out, and counted as wrong: {count} tokens ({reason})"
-        );
-    }
+    let text = train_text::comparison(&candidates, &tested, &arguments.leave_out, arguments.seed);
     voice.give(text.as_bytes())?;
+    Ok(Outcome::AllDone)
+}
 
-    if let Some(out) = &arguments.out {
-        let record = TrainingRecord {
-            program: env!("CARGO_PKG_VERSION").to_owned(),
-            data: arguments
-                .tables
-                .iter()
-                .zip(&read)
-                .map(|(path, (table, bytes))| data_line(path, table.len(), bytes))
-                .collect(),
-            command: command(arguments),
-            tokens: samples.rows.len(),
-            left_out: samples.left_out.values().sum(),
-            speakers: samples.speakers.len(),
-            seed: arguments.seed,
-            held_out,
-            accuracy,
-            confusion: evaluation.confusion(),
+/// A combination with what came of its test.
+pub(super) struct Tested {
+    /// What it was tested on.
+    pub(super) samples: Samples,
+    /// What it said.
+    pub(super) evaluation: Evaluation,
+    /// Names of the groups, where groups were left out, and each speaker's place among them.
+    pub(super) groups: Option<(Vec<String>, Vec<usize>)>,
+}
+
+/// All combinations asked for.
+fn candidates(arguments: &TrainArguments) -> Result<Vec<Candidate>, Failure> {
+    let mut candidates = Vec::new();
+    for name in &arguments.classifier {
+        let kind = match name.trim().parse().map_err(Failure::new)? {
+            Kind::Logistic { .. } => Kind::Logistic {
+                penalty: arguments.penalty,
+            },
+            Kind::Template { .. } => Kind::Template {
+                modes: arguments.modes,
+            },
+            other => other,
         };
-        let name = match &arguments.name {
-            Some(name) => name.clone(),
-            None => out
-                .file_stem()
-                .map(|stem| stem.to_string_lossy().into_owned())
-                .unwrap_or_default(),
+        let (usual_method, usual_features) = match kind {
+            Kind::Template { .. } => ("ln", "f1_norm,f2_norm,f3_norm,f0_norm"),
+            _ => ("lobanov", "f1_norm,f2_norm,f3_norm"),
         };
-        let model = Model::train(&name, kind, &method, &samples, record).map_err(Failure::new)?;
-        files::write(out, model.to_text().as_bytes())?;
-        voice.say(format!("wrote `{}`", out.display()));
+        let or_usual = |given: &[String], usual: &str| {
+            if given.is_empty() {
+                vec![usual.to_owned()]
+            } else {
+                given.to_vec()
+            }
+        };
+        for method in or_usual(&arguments.normalization, usual_method) {
+            let method: Method = method.parse().map_err(|error| {
+                Failure::new(error).hint("`isophone normalize --methods` lists them")
+            })?;
+            for list in or_usual(&arguments.features, usual_features) {
+                let features = list
+                    .split(',')
+                    .map(|name| name.trim().parse().map_err(Failure::new))
+                    .collect::<Result<_, _>>()?;
+                candidates.push(Candidate {
+                    kind,
+                    method: method.clone(),
+                    features,
+                });
+            }
+        }
     }
-    Ok(if samples.left_out.is_empty() {
-        Outcome::AllDone
-    } else {
-        Outcome::SomethingLeftOut
+    Ok(candidates)
+}
+
+/// Tests one combination on what is left out.
+fn test(
+    candidate: &Candidate,
+    arguments: &TrainArguments,
+    read: &[(ObservationTable, Vec<u8>)],
+    observations: &[&[Observation]],
+) -> Result<Tested, Failure> {
+    let samples = Samples::gather(&candidate.features, &candidate.method, observations);
+    if samples.complete().rows.is_empty() {
+        let reasons: Vec<&str> = samples.lacking.keys().map(String::as_str).collect();
+        return Err(Failure::new("no labelled token has all the features")
+            .hint(format!("lacking: {}", reasons.join("; "))));
+    }
+    let groups = match arguments.leave_out.as_str() {
+        "speaker" | "token" => None,
+        column => Some(speaker_groups(read, &arguments.tables, column, &samples)?),
+    };
+    let fold = |row: usize| match (&groups, arguments.leave_out.as_str()) {
+        (Some((_, of_speaker)), _) => of_speaker[samples.speaker[row]],
+        (None, "token") => row,
+        (None, _) => samples.speaker[row],
+    };
+    let evaluation = evaluate(candidate.kind, &samples, &fold).map_err(Failure::new)?;
+    Ok(Tested {
+        samples,
+        evaluation,
+        groups,
     })
 }
 
-/// The accuracy in words.
-fn told(accuracy: &Accuracy) -> String {
-    format!(
-        "{:.1} % identified as labelled ({} of {} tokens, {} speakers; 95 % interval over speakers \
-         {:.1} to {:.1} %)\n",
-        100.0 * accuracy.share,
-        accuracy.correct,
-        accuracy.tokens,
-        accuracy.speakers,
-        100.0 * accuracy.low,
-        100.0 * accuracy.high,
-    )
-}
-
-/// Each group's own accuracy when it was left out.
-fn by_group(evaluation: &Evaluation, names: &[String], of_speaker: &[usize]) -> String {
-    let mut counts: BTreeMap<usize, (usize, usize)> = BTreeMap::new();
-    for row in &evaluation.rows {
-        let group = counts.entry(of_speaker[row.speaker]).or_default();
-        group.0 += usize::from(row.answer() == row.class);
-        group.1 += 1;
-    }
-    for (speaker, _) in &evaluation.incomplete {
-        counts.entry(of_speaker[*speaker]).or_default().1 += 1;
-    }
-    counts
-        .into_iter()
-        .map(|(group, (correct, tokens))| {
-            format!(
-                "    {}: {:.1} % ({correct} of {tokens})\n",
-                names[group],
-                100.0 * correct as f64 / tokens as f64
-            )
-        })
-        .collect()
-}
-
-/// The confusion table, with recall.
-pub(super) fn confusion_text(evaluation: &Evaluation) -> String {
-    let table = evaluation.confusion();
-    let mut missing: BTreeMap<usize, usize> = BTreeMap::new();
-    for (_, class) in &evaluation.incomplete {
-        *missing.entry(*class).or_insert(0) += 1;
-    }
-    let cell = |text: String| format!("{text:>6}");
-    let mut text = String::from("label\\answer");
-    for vowel in &evaluation.vowels {
-        text.push_str(&cell(vowel.to_string()));
-    }
-    text.push_str("  none  recall %\n");
-    for (class, (vowel, row)) in evaluation.vowels.iter().zip(&table).enumerate() {
-        let none = missing.get(&class).copied().unwrap_or(0);
-        let all = row.iter().sum::<usize>() + none;
-        let _ = write!(text, "{:<12}", Vowel::ipa(vowel));
-        for count in row {
-            text.push_str(&cell(count.to_string()));
-        }
-        let recall = 100.0 * row[class] as f64 / all.max(1) as f64;
-        let _ = writeln!(text, "{none:>6}{recall:>10.1}");
-    }
-    text
+/// Trains on everything and writes the model.
+fn write_model(
+    arguments: &TrainArguments,
+    candidate: &Candidate,
+    tested: &Tested,
+    read: &[(ObservationTable, Vec<u8>)],
+    out: &Path,
+) -> Result<(), Failure> {
+    let Tested {
+        samples,
+        evaluation,
+        ..
+    } = tested;
+    let record = TrainingRecord {
+        program: env!("CARGO_PKG_VERSION").to_owned(),
+        data: arguments
+            .tables
+            .iter()
+            .zip(read)
+            .map(|(path, (table, bytes))| data_line(path, table.len(), bytes))
+            .collect(),
+        command: command(arguments),
+        tokens: samples.complete().rows.len(),
+        left_out: evaluation.incomplete.len(),
+        speakers: samples.speakers.len(),
+        seed: arguments.seed,
+        held_out: train_text::held_out(&arguments.leave_out),
+        accuracy: evaluation.accuracy(arguments.seed),
+        confusion: evaluation.confusion(),
+        reliability: evaluation.reliability(),
+    };
+    let name = match &arguments.name {
+        Some(name) => name.clone(),
+        None => out
+            .file_stem()
+            .map(|stem| stem.to_string_lossy().into_owned())
+            .unwrap_or_default(),
+    };
+    let Candidate { kind, method, .. } = candidate;
+    let model =
+        Model::train(&name, *kind, method, samples, evaluation, record).map_err(Failure::new)?;
+    files::write(out, model.to_text().as_bytes())?;
+    Ok(())
 }
 
 /// Names of the groups, sorted, and each speaker's group as a place in that list.
 fn speaker_groups(
-    read: &[(crate::tables::ObservationTable, Vec<u8>)],
+    read: &[(ObservationTable, Vec<u8>)],
     paths: &[PathBuf],
     column: &str,
     samples: &Samples,
@@ -254,8 +295,8 @@ fn speaker_groups(
         }
     }
     let group = |speaker: &String| of_speaker.get(speaker).cloned().unwrap_or_default();
-    let mut names: Vec<String> = samples.speakers.iter().map(group).collect();
-    let each = names.clone();
+    let each: Vec<String> = samples.speakers.iter().map(group).collect();
+    let mut names = each.clone();
     names.sort();
     names.dedup();
     if names.len() < 2 {
@@ -286,35 +327,30 @@ fn data_line(path: &Path, rows: usize, bytes: &[u8]) -> String {
 /// The command that repeats the training.
 fn command(arguments: &TrainArguments) -> String {
     let mut words = vec!["isophone train".to_owned()];
-    words.extend(arguments.tables.iter().map(|p| p.display().to_string()));
-    words.extend(
-        arguments
-            .tracks
-            .iter()
-            .map(|p| format!("--tracks {}", p.display())),
+    let option = |words: &mut Vec<String>, name: &str, values: &[String]| {
+        words.extend(values.iter().map(|value| format!("--{name} {value}")));
+    };
+    let paths = |paths: &[PathBuf]| paths.iter().map(|p| p.display().to_string()).collect();
+    let tracks: Vec<String> = paths(&arguments.tracks);
+    let tables: Vec<String> = paths(&arguments.tables);
+    words.extend(tables);
+    option(&mut words, "tracks", &tracks);
+    option(&mut words, "column", arguments.columns.renamed());
+    option(&mut words, "features", &arguments.features);
+    option(&mut words, "normalization", &arguments.normalization);
+    option(&mut words, "classifier", &arguments.classifier);
+    option(&mut words, "vowels", &arguments.vowels);
+    option(&mut words, "penalty", &[arguments.penalty.to_string()]);
+    option(&mut words, "modes", &[arguments.modes.to_string()]);
+    option(
+        &mut words,
+        "leave-out",
+        std::slice::from_ref(&arguments.leave_out),
     );
-    words.extend(
-        arguments
-            .columns
-            .renamed()
-            .iter()
-            .map(|r| format!("--column {r}")),
-    );
-    words.push(format!("--features {}", arguments.features.join(",")));
-    words.push(format!("--normalization {}", arguments.normalization));
-    words.push(format!("--classifier {}", arguments.classifier));
-    if arguments.classifier == "logistic" {
-        words.push(format!("--penalty {}", arguments.penalty));
-    }
-    if let Some(column) = &arguments.leave_out_by {
-        words.push(format!("--leave-out-by {column}"));
-    }
-    words.push(format!("--seed {}", arguments.seed));
-    if let Some(name) = &arguments.name {
-        words.push(format!("--name {name}"));
-    }
+    option(&mut words, "seed", &[arguments.seed.to_string()]);
+    option(&mut words, "name", arguments.name.as_slice());
     if let Some(out) = &arguments.out {
-        words.push(format!("--out {}", out.display()));
+        option(&mut words, "out", &[out.display().to_string()]);
     }
     words.join(" ")
 }

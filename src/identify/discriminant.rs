@@ -19,7 +19,12 @@ pub enum Spread {
     Common,
     /// Each its own.
     Own,
+    /// Each its own, drawn toward the common one so far that few rows suffice.
+    Drawn,
 }
+
+/// Share of the common spread in each class's own, where it is drawn.
+const TOWARD_COMMON: f64 = 0.3;
 
 /// A fitted discriminant.
 #[derive(Debug, Clone, PartialEq)]
@@ -66,7 +71,7 @@ impl Discriminant {
                 }
             }
             let needed = match spread {
-                Spread::Common => 1,
+                Spread::Common | Spread::Drawn => 1,
                 Spread::Own => width + 1,
             };
             if rows.len() < needed {
@@ -85,29 +90,47 @@ impl Discriminant {
                 .map(|row| row.iter().map(|v| v / by).collect())
                 .collect()
         };
-        let covariance = match spread {
-            Spread::Common => {
-                let mut total = vec![vec![0.0; width]; width];
-                for sum in &scatter {
-                    for a in 0..width {
-                        for b in 0..width {
-                            total[a][b] += sum[a][b];
-                        }
+        let common = || {
+            let mut total = vec![vec![0.0; width]; width];
+            for sum in &scatter {
+                for a in 0..width {
+                    for b in 0..width {
+                        total[a][b] += sum[a][b];
                     }
                 }
-                let degrees = samples.rows.len() as f64 - present.len() as f64;
-                vec![divided(&total, degrees)]
             }
+            let degrees = samples.rows.len() as f64 - present.len() as f64;
+            divided(&total, degrees)
+        };
+        let covariance = match spread {
+            Spread::Common => vec![common()],
             Spread::Own => scatter
                 .iter()
                 .zip(&counts)
                 .map(|(sum, n)| divided(sum, n - 1.0))
                 .collect(),
+            Spread::Drawn => {
+                let common = common();
+                let drawn = |sum: &Vec<Vec<f64>>, n: f64| {
+                    let mut matrix = divided(sum, n);
+                    for a in 0..width {
+                        for b in 0..width {
+                            matrix[a][b] += TOWARD_COMMON * (common[a][b] - matrix[a][b]);
+                        }
+                    }
+                    matrix
+                };
+                scatter
+                    .iter()
+                    .zip(&counts)
+                    .map(|(s, n)| drawn(s, *n))
+                    .collect()
+            }
         };
         Self::of(mean, covariance).map_err(|place| {
             FitError::Degenerate(match spread {
                 Spread::Common => "all vowels".to_owned(),
-                Spread::Own => samples.vowels[present[place]].to_string(),
+                Spread::Own | Spread::Drawn => samples.vowels[present[place]].to_string(),
             })
         })
     }
@@ -134,20 +157,37 @@ impl Discriminant {
 
     /// Natural logarithms of the probabilities of the classes for one row.
     pub fn ln_probabilities(&self, row: &[f64]) -> Vec<f64> {
-        let mut place = 0;
-        let mut score = Vec::with_capacity(self.mean.len());
-        for mean in &self.mean {
-            let Some(mean) = mean else {
-                score.push(f64::NEG_INFINITY);
-                continue;
-            };
-            let factor = &self.factors[place.min(self.factors.len() - 1)];
-            place += 1;
-            let offset: Vec<f64> = row.iter().zip(mean).map(|(x, m)| x - m).collect();
-            score.push(-0.5 * (factor.squared_distance(&offset) + factor.ln_determinant()));
-        }
+        let mut score: Vec<f64> = self
+            .distances(row)
+            .map(|known| match known {
+                None => f64::NEG_INFINITY,
+                Some((distance, ln_determinant)) => -0.5 * (distance + ln_determinant),
+            })
+            .collect();
         let ln_total = ln_sum_exp(&score);
         score.iter_mut().for_each(|s| *s -= ln_total);
         score
+    }
+
+    /// Squared distance of a row from the nearest class, in units of the spread there.
+    pub fn squared_distance(&self, row: &[f64]) -> f64 {
+        self.distances(row)
+            .flatten()
+            .fold(f64::INFINITY, |nearest, (distance, _)| {
+                nearest.min(distance)
+            })
+    }
+
+    /// Squared distance and logarithm of the determinant for each class; `None` for classes without
+    /// rows.
+    fn distances(&self, row: &[f64]) -> impl Iterator<Item = Option<(f64, f64)>> {
+        let mut place = 0;
+        self.mean.iter().map(move |mean| {
+            let mean = mean.as_ref()?;
+            let factor = &self.factors[place.min(self.factors.len() - 1)];
+            place += 1;
+            let offset: Vec<f64> = row.iter().zip(mean).map(|(x, m)| x - m).collect();
+            Some((factor.squared_distance(&offset), factor.ln_determinant()))
+        })
     }
 }

@@ -7,9 +7,10 @@ use rayon::prelude::*;
 
 use crate::vowel::Vowel;
 
-use super::classifier::{Classifier, Kind};
+use super::classifier::Kind;
 use super::logistic::FitError;
 use super::samples::Samples;
+use super::trained::Trained;
 
 /// What was said about one held-out row.
 #[derive(Debug, Clone, PartialEq)]
@@ -18,8 +19,10 @@ pub struct HeldOut {
     pub speaker: usize,
     /// Its class.
     pub class: usize,
-    /// Natural logarithms of the probabilities.
+    /// Natural logarithms of the probabilities, before calibration.
     pub ln_probability: Vec<f64>,
+    /// How unlike the nearest vowel it is.
+    pub strangeness: f64,
 }
 
 /// A classifier tried on speakers left out of its training, fold by fold.
@@ -27,16 +30,15 @@ pub struct HeldOut {
 pub struct Evaluation {
     /// The vowels.
     pub vowels: Vec<Vowel>,
-    /// Every row, once.
+    /// Every row that was answered, once.
     pub rows: Vec<HeldOut>,
-    /// Labelled observations that lacked a column, as (speaker, class). They count as wrong.
+    /// Labelled observations without an answer, as (speaker, class): a column or the normalization
+    /// was lacking, or their fold could not be fitted. They count as wrong.
     pub incomplete: Vec<(usize, usize)>,
-    /// Rows of speakers whose fold could not be fitted, counted as wrong with the others.
-    pub unfitted: usize,
 }
 
 /// A share with its interval.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
 pub struct Accuracy {
     /// Share of tokens identified as labelled, 0 to 1.
     pub share: f64,
@@ -56,9 +58,9 @@ pub struct Accuracy {
 /// from one seed to another.
 const DRAWS: usize = 2000;
 
-/// Leaves out each fold of speakers in turn: trains on the others, asks about those left out.
+/// Leaves out each fold of rows in turn: trains on the others, asks about those left out.
 ///
-/// `fold` gives each speaker's fold; for leaving one speaker out, the speaker's own place.
+/// `fold` gives the fold of each row. Rows of one speaker in one fold are asked about together.
 ///
 /// # Errors
 /// [`FitError`] where not even all rows together can be fitted.
@@ -67,27 +69,37 @@ pub fn evaluate(
     samples: &Samples,
     fold: &(dyn Fn(usize) -> usize + Sync),
 ) -> Result<Evaluation, FitError> {
-    let whole = Classifier::fit(kind, samples)?;
-    let mut folds: Vec<usize> = (0..samples.speakers.len()).map(fold).collect();
+    let whole = Trained::fit(kind, samples)?;
+    let of_row: Vec<usize> = (0..samples.rows.len()).map(fold).collect();
+    let mut folds = of_row.clone();
     folds.sort_unstable();
     folds.dedup();
-    let answers: Vec<(Vec<HeldOut>, usize)> = folds
+    let parts: Vec<Evaluation> = folds
         .par_iter()
         .map(|left_out| {
-            let training = samples.only(|speaker| fold(speaker) != *left_out);
-            let test = samples.only(|speaker| fold(speaker) == *left_out);
-            match Classifier::fit_from(kind, &training, Some(&whole)) {
-                Ok(classifier) => (answers(&classifier, &test), 0),
-                Err(_) => (Vec::new(), test.rows.len()),
+            let (test, training): (Vec<usize>, Vec<usize>) =
+                (0..of_row.len()).partition(|row| of_row[*row] == *left_out);
+            let test = samples.subset(&test);
+            match Trained::fit_from(kind, &samples.subset(&training), Some(&whole)) {
+                Ok(trained) => ask(&trained, &test),
+                Err(_) => Evaluation {
+                    vowels: Vec::new(),
+                    rows: Vec::new(),
+                    incomplete: test.speaker.iter().copied().zip(test.class).collect(),
+                },
             }
         })
         .collect();
-    Ok(Evaluation {
+    let mut evaluation = Evaluation {
         vowels: samples.vowels.clone(),
-        unfitted: answers.iter().map(|(_, unfitted)| unfitted).sum(),
-        rows: answers.into_iter().flat_map(|(rows, _)| rows).collect(),
+        rows: Vec::new(),
         incomplete: samples.incomplete.clone(),
-    })
+    };
+    for part in parts {
+        evaluation.rows.extend(part.rows);
+        evaluation.incomplete.extend(part.incomplete);
+    }
+    Ok(evaluation)
 }
 
 /// Leaves out one speaker at a time.
@@ -95,18 +107,36 @@ pub fn evaluate(
 /// # Errors
 /// As [`evaluate`].
 pub fn leave_one_speaker_out(kind: Kind, samples: &Samples) -> Result<Evaluation, FitError> {
-    evaluate(kind, samples, &|speaker| speaker)
+    evaluate(kind, samples, &|row| samples.speaker[row])
 }
 
-/// What a classifier says about rows it was not trained on.
-pub fn answers(classifier: &Classifier, test: &Samples) -> Vec<HeldOut> {
-    (0..test.rows.len())
-        .map(|row| HeldOut {
-            speaker: test.speaker[row],
-            class: test.class[row],
-            ln_probability: classifier.ln_probabilities(&test.rows[row]),
-        })
-        .collect()
+/// Asks about rows, those of one speaker together.
+pub fn ask(trained: &Trained, test: &Samples) -> Evaluation {
+    let mut evaluation = Evaluation {
+        vowels: test.vowels.clone(),
+        rows: Vec::new(),
+        incomplete: Vec::new(),
+    };
+    for (speaker, places) in test.by_speaker() {
+        let rows: Vec<&[f64]> = places.iter().map(|p| test.rows[*p].as_slice()).collect();
+        let variance: Vec<&[f64]> = places
+            .iter()
+            .map(|p| test.variance[*p].as_slice())
+            .collect();
+        for (place, answer) in places.iter().zip(trained.answers(&rows, &variance)) {
+            let class = test.class[*place];
+            match answer {
+                Some(answer) => evaluation.rows.push(HeldOut {
+                    speaker,
+                    class,
+                    ln_probability: answer.ln_probability,
+                    strangeness: answer.strangeness,
+                }),
+                None => evaluation.incomplete.push((speaker, class)),
+            }
+        }
+    }
+    evaluation
 }
 
 impl HeldOut {
@@ -157,7 +187,6 @@ impl Evaluation {
             })
         };
         let (correct, tokens) = total(&mut counts.iter().copied());
-        let tokens = tokens + self.unfitted;
         let share = |correct: usize, tokens: usize| correct as f64 / tokens.max(1) as f64;
         let mut random = Pcg64Mcg::seed_from_u64(seed);
         let mut drawn: Vec<f64> = (0..DRAWS)

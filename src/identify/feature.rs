@@ -21,6 +21,8 @@ pub enum Feature {
     F0,
     /// Natural logarithm of the duration in seconds, less its mean over the speaker's tokens.
     Duration,
+    /// Natural logarithm of the duration in seconds.
+    Seconds,
 }
 
 /// A moment in a vowel.
@@ -41,6 +43,7 @@ impl fmt::Display for Feature {
             },
             Self::F0 => f.write_str("f0_norm"),
             Self::Duration => f.write_str("ln_duration"),
+            Self::Seconds => f.write_str("ln_seconds"),
         }
     }
 }
@@ -59,6 +62,7 @@ impl FromStr for Feature {
         let unknown = || UnknownFeature(text.to_owned());
         match text {
             "ln_duration" => return Ok(Self::Duration),
+            "ln_seconds" => return Ok(Self::Seconds),
             "f0_norm" => return Ok(Self::F0),
             _ => {}
         }
@@ -80,17 +84,6 @@ impl FromStr for Feature {
         };
         Ok(Self::Formant { number, at })
     }
-}
-
-/// Why an observation has no complete row of features.
-#[derive(Debug, Clone, PartialEq, thiserror::Error)]
-pub enum NoFeatures {
-    /// The speaker has too little for the normalization.
-    #[error("the speaker has {0}")]
-    Speaker(Lacks),
-    /// A value is missing.
-    #[error("no value for {0}")]
-    Missing(String),
 }
 
 /// Everything needed to fill the columns for the speakers of one table.
@@ -142,37 +135,65 @@ impl FeatureTable {
         &self.normalization
     }
 
-    /// The row of one observation.
+    /// The row of one observation; NaN stands where a value is missing.
     ///
     /// # Errors
-    /// [`NoFeatures`] with the speaker's lack, or the first column that has no value.
-    pub fn row(&self, observation: &Observation) -> Result<Vec<f64>, NoFeatures> {
-        let scale = match self.normalization.scales.get(&observation.speaker) {
-            Some(Ok(scale)) => scale,
-            Some(Err(lack)) => return Err(NoFeatures::Speaker(lack.clone())),
-            None => {
-                return Err(NoFeatures::Speaker(Lacks::Values {
-                    formant: 1,
-                    found: 0,
-                    needed: 1,
-                }));
-            }
-        };
-        self.features
+    /// What the speaker lacks for the normalization.
+    pub fn row(&self, observation: &Observation) -> Result<Vec<f64>, Lacks> {
+        let scale = self.scale(observation)?;
+        Ok(self
+            .features
             .iter()
             .map(|feature| {
                 let value = match feature {
                     Feature::Formant { number, at } => {
-                        formant(observation, scale, usize::from(*number) - 1, *at)
+                        let index = usize::from(*number) - 1;
+                        scale.apply(&values(observation, *at))[index]
                     }
                     Feature::F0 => self.f0_value(observation),
                     Feature::Duration => self.duration(observation),
+                    Feature::Seconds => observation.duration_s.map(f64::ln),
                 };
-                value
-                    .filter(|v| v.is_finite())
-                    .ok_or_else(|| NoFeatures::Missing(feature.to_string()))
+                value.filter(|v| v.is_finite()).unwrap_or(f64::NAN)
+            })
+            .collect())
+    }
+
+    /// The squared standard errors of the row's values; 0 where nothing is known of them.
+    ///
+    /// The track's values carry the error of the token's single value.
+    pub fn variance(&self, observation: &Observation) -> Vec<f64> {
+        let Ok(scale) = self.scale(observation) else {
+            return vec![0.0; self.features.len()];
+        };
+        self.features
+            .iter()
+            .map(|feature| match feature {
+                Feature::Formant { number, at } => {
+                    let sd = scale.apply_sd(&values(observation, *at), &observation.sd_hz);
+                    sd[usize::from(*number) - 1].map_or(0.0, |sd| sd * sd)
+                }
+                Feature::F0 | Feature::Duration | Feature::Seconds => 0.0,
             })
             .collect()
+    }
+
+    /// The name of the first column that has no value in a row.
+    pub fn missing(&self, row: &[f64]) -> Option<String> {
+        let place = row.iter().position(|v| !v.is_finite())?;
+        Some(self.features[place].to_string())
+    }
+
+    fn scale(&self, observation: &Observation) -> Result<&SpeakerScale, Lacks> {
+        match self.normalization.scales.get(&observation.speaker) {
+            Some(Ok(scale)) => Ok(scale),
+            Some(Err(lack)) => Err(lack.clone()),
+            None => Err(Lacks::Values {
+                formant: 1,
+                found: 0,
+                needed: 1,
+            }),
+        }
     }
 
     fn f0_value(&self, observation: &Observation) -> Option<f64> {
@@ -187,24 +208,15 @@ impl FeatureTable {
     }
 }
 
-/// A normalized formant (`index` 0 for F1) at a moment.
-fn formant(
-    observation: &Observation,
-    scale: &SpeakerScale,
-    index: usize,
-    at: Moment,
-) -> Option<f64> {
-    let formant_hz = match at {
-        Moment::Steady => observation.formant_hz,
-        Moment::Proportion(proportion) => {
-            [0, 1, 2].map(|n| track_value(&observation.track, proportion, n))
-        }
-    };
-    let values = Values {
-        f0_hz: observation.f0_hz,
-        formant_hz,
-    };
-    scale.apply(&values)[index]
+/// F0 and the formants at a moment.
+fn values(observation: &Observation, at: Moment) -> Values {
+    match at {
+        Moment::Steady => Values::of(observation),
+        Moment::Proportion(proportion) => Values {
+            f0_hz: observation.f0_hz,
+            formant_hz: [0, 1, 2].map(|n| track_value(&observation.track, proportion, n)),
+        },
+    }
 }
 
 /// The value of formant `index` at a proportion, by a straight line between the nearest points that
@@ -246,6 +258,7 @@ mod tests {
             "f2_norm@0.85",
             "f0_norm",
             "ln_duration",
+            "ln_seconds",
         ] {
             assert_eq!(name.parse::<Feature>().unwrap().to_string(), name);
         }
@@ -300,9 +313,7 @@ mod tests {
             assert!((found - expected).abs() < 1e-12);
         }
         let table = FeatureTable::fit(&["f3_norm".parse().unwrap()], &method, &observations);
-        assert_eq!(
-            table.row(&observations[0]),
-            Err(NoFeatures::Missing("f3_norm".to_owned()))
-        );
+        let row = table.row(&observations[0]).unwrap();
+        assert_eq!(table.missing(&row), Some("f3_norm".to_owned()));
     }
 }

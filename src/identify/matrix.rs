@@ -60,6 +60,32 @@ impl Cholesky {
         self.half_solve(offset).iter().map(|v| v * v).sum()
     }
 
+    /// `L^-1`, its lower triangle row by row.
+    pub(super) fn packed_inverse(&self) -> Vec<f64> {
+        let n = self.lower.len();
+        let mut packed = vec![0.0; n * (n + 1) / 2];
+        for column in 0..n {
+            let mut unit = vec![0.0; n];
+            unit[column] = 1.0;
+            for (row, value) in self.half_solve(&unit).into_iter().enumerate().skip(column) {
+                packed[row * (row + 1) / 2 + column] = value;
+            }
+        }
+        packed
+    }
+
+    /// `A^-1`.
+    pub(super) fn inverse(&self) -> Vec<Vec<f64>> {
+        let n = self.lower.len();
+        (0..n)
+            .map(|column| {
+                let mut unit = vec![0.0; n];
+                unit[column] = 1.0;
+                self.solve(&unit)
+            })
+            .collect()
+    }
+
     /// `ln |A|`.
     pub(super) fn ln_determinant(&self) -> f64 {
         let half: f64 = (0..self.lower.len()).map(|n| self.lower[n][n].ln()).sum();
@@ -79,6 +105,17 @@ mod tests {
         assert!((x[0] + 0.125).abs() < 1e-12 && (x[1] - 0.75).abs() < 1e-12);
         assert!((factor.ln_determinant() - 8f64.ln()).abs() < 1e-12);
         assert!((factor.squared_distance(&[1.0, 2.0]) - 1.375).abs() < 1e-12);
+        let inverse = factor.inverse();
+        assert!((inverse[0][1] + 0.25).abs() < 1e-12 && (inverse[1][1] - 0.5).abs() < 1e-12);
+        // L = [[2,0],[1,sqrt 2]], so its inverse is [[1/2,0],[-1/(2 sqrt 2),1/sqrt 2]].
+        let packed = factor.packed_inverse();
+        let expected = [0.5, -0.5 / 2f64.sqrt(), 1.0 / 2f64.sqrt()];
+        assert!(
+            packed
+                .iter()
+                .zip(expected)
+                .all(|(a, b)| (a - b).abs() < 1e-12)
+        );
         assert!(Cholesky::of(&[vec![1.0, 2.0], vec![2.0, 1.0]]).is_none());
         assert!(Cholesky::of(&[vec![f64::NAN]]).is_none());
     }

@@ -1,14 +1,18 @@
 //! A classifier with everything needed to use it again, and what it says about a survey.
 
-use crate::normalize::{Method, SpeakerTokens};
+use std::collections::BTreeMap;
+
+use crate::normalize::{Lacks, Method};
 use crate::tokens::Observation;
 use crate::vowel::Vowel;
 
-use super::classifier::{Classifier, Kind};
-use super::evaluate::Accuracy;
-use super::feature::{Feature, FeatureTable, NoFeatures};
+use super::calibration::{Calibration, Reliability};
+use super::classifier::Kind;
+use super::evaluate::{Accuracy, Evaluation};
+use super::feature::{Feature, FeatureTable};
 use super::logistic::FitError;
 use super::samples::Samples;
+use super::trained::{Answer, Trained};
 
 /// A trained model.
 #[derive(Debug, Clone, PartialEq)]
@@ -24,13 +28,15 @@ pub struct Model {
     /// The vowels it knows, sorted.
     pub vowels: Vec<Vowel>,
     /// The fitted classifier.
-    pub classifier: Classifier,
+    pub trained: Trained,
+    /// What its raw answers are worth.
+    pub calibration: Calibration,
     /// How it came to be.
     pub record: TrainingRecord,
 }
 
 /// How a model came to be.
-#[derive(Debug, Clone, PartialEq)]
+#[derive(Debug, Clone, PartialEq, Default)]
 pub struct TrainingRecord {
     /// Version of the program that trained it.
     pub program: String,
@@ -40,7 +46,7 @@ pub struct TrainingRecord {
     pub command: String,
     /// Tokens it was fitted to.
     pub tokens: usize,
-    /// Labelled tokens that lacked a column.
+    /// Labelled tokens without an answer: a column or the normalization was lacking.
     pub left_out: usize,
     /// Speakers.
     pub speakers: usize,
@@ -52,6 +58,8 @@ pub struct TrainingRecord {
     pub accuracy: Accuracy,
     /// Confusion on the held out: rows labels, columns answers, in the order of the vowels.
     pub confusion: Vec<Vec<usize>>,
+    /// How often stated probabilities came true on held-out speakers, calibrated on others.
+    pub reliability: Vec<Reliability>,
 }
 
 /// What a model says about one token.
@@ -69,9 +77,12 @@ pub struct Identification {
 /// Why a model says nothing about a token.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
 pub enum Declined {
-    /// A value is missing, or the speaker has too little for the normalization.
-    #[error("{0}")]
-    Features(NoFeatures),
+    /// A value is missing.
+    #[error("no value for {0}")]
+    Missing(String),
+    /// The speaker has too little for the normalization.
+    #[error("the speaker has {0}")]
+    Speaker(Lacks),
     /// The speaker has too few tokens to stand for the vowel set.
     #[error("the speaker has {found} tokens, where the normalization needs at least {needed}")]
     FewTokens {
@@ -80,6 +91,14 @@ pub enum Declined {
         /// Fewest that are taken.
         needed: usize,
     },
+    /// The speaker's tokens are not spread over the vowel set.
+    #[error(
+        "the speaker's tokens are not spread evenly over the vowel set, which the normalization needs"
+    )]
+    Uneven,
+    /// The token is like none of the model's vowels.
+    #[error("unlike any vowel of the model")]
+    UnlikeAny,
 }
 
 /// Fewest tokens of a speaker from which mean and deviation are taken, for the normalizations that
@@ -87,8 +106,7 @@ pub enum Declined {
 pub const FEWEST_TOKENS: usize = 8;
 
 impl Model {
-    /// Trains a model on labelled observations; the record starts empty of what only the caller
-    /// knows.
+    /// Trains a model on labelled observations, calibrated on what an evaluation held out.
     ///
     /// # Errors
     /// [`FitError`] where the samples do not allow it.
@@ -97,6 +115,7 @@ impl Model {
         kind: Kind,
         normalization: &Method,
         samples: &Samples,
+        evaluation: &Evaluation,
         record: TrainingRecord,
     ) -> Result<Self, FitError> {
         Ok(Self {
@@ -105,63 +124,103 @@ impl Model {
             features: samples.features.clone(),
             normalization: normalization.clone(),
             vowels: samples.vowels.clone(),
-            classifier: Classifier::fit(kind, samples)?,
+            trained: Trained::fit(kind, samples)?,
+            calibration: Calibration::fit(evaluation.rows.iter()),
             record,
         })
     }
 
+    /// Whether the model takes the size out by a normalization that needs the whole vowel set.
+    pub fn needs_whole_set(&self) -> bool {
+        self.normalization.account().whole_vowel_set
+    }
+
     /// Says what the tokens of a survey are; the order is that of the observations.
     ///
-    /// The normalization is fitted to all observations given, so all tokens of a speaker should be
-    /// given together.
+    /// Normalization and template look at all tokens of a speaker, so all should be given together.
     pub fn identify(&self, observations: &[Observation]) -> Vec<Identification> {
-        let table = FeatureTable::fit(&self.features, &self.normalization, observations);
-        let speakers = SpeakerTokens::of(observations);
-        let whole_set = self.normalization.account().whole_vowel_set;
-        observations
-            .iter()
-            .map(|observation| {
-                let found = speakers[&observation.speaker].iter().count();
-                let ranked = if whole_set && found < FEWEST_TOKENS {
-                    Err(Declined::FewTokens {
-                        found,
-                        needed: FEWEST_TOKENS,
-                    })
-                } else {
-                    table
-                        .row(observation)
-                        .map(|row| self.ranked(&row))
-                        .map_err(Declined::Features)
-                };
-                Identification {
-                    token: observation.token.clone(),
-                    ranked,
-                    model: self.name.clone(),
-                }
+        self.outcomes(observations)
+            .into_iter()
+            .zip(observations)
+            .map(|(outcome, observation)| Identification {
+                token: observation.token.clone(),
+                ranked: outcome.and_then(|answer| self.stated(&answer)),
+                model: self.name.clone(),
             })
             .collect()
     }
 
-    /// The vowels with their probabilities for one row, the most probable first.
-    fn ranked(&self, row: &[f64]) -> Vec<(Vowel, f64)> {
+    /// Raw answers to the tokens of a survey, in the order of the observations.
+    pub(super) fn outcomes(&self, observations: &[Observation]) -> Vec<Result<Answer, Declined>> {
+        let table = FeatureTable::fit(&self.features, &self.normalization, observations);
+        let mut by_speaker: BTreeMap<&str, Vec<usize>> = BTreeMap::new();
+        for (place, observation) in observations.iter().enumerate() {
+            let places = by_speaker.entry(&observation.speaker).or_default();
+            places.push(place);
+        }
+        let mut outcomes: Vec<Result<Answer, Declined>> =
+            vec![Err(Declined::Uneven); observations.len()];
+        for places in by_speaker.values() {
+            let speaker: Vec<&Observation> = places.iter().map(|p| &observations[*p]).collect();
+            for (place, outcome) in places.iter().zip(self.of_speaker(&table, &speaker)) {
+                outcomes[*place] = outcome;
+            }
+        }
+        outcomes
+    }
+
+    fn of_speaker(
+        &self,
+        table: &FeatureTable,
+        speaker: &[&Observation],
+    ) -> Vec<Result<Answer, Declined>> {
+        let found = speaker.len();
+        if self.needs_whole_set() && found < FEWEST_TOKENS {
+            let few = Declined::FewTokens {
+                found,
+                needed: FEWEST_TOKENS,
+            };
+            return vec![Err(few); found];
+        }
+        let rows: Vec<Result<Vec<f64>, Lacks>> = speaker.iter().map(|o| table.row(o)).collect();
+        let variance: Vec<Vec<f64>> = speaker.iter().map(|o| table.variance(o)).collect();
+        let known: Vec<usize> = (0..found).filter(|n| rows[*n].is_ok()).collect();
+        let known_rows: Vec<&[f64]> = rows.iter().flatten().map(Vec::as_slice).collect();
+        let known_variance: Vec<&[f64]> = known.iter().map(|n| variance[*n].as_slice()).collect();
+        let mut answers = self
+            .trained
+            .answers(&known_rows, &known_variance)
+            .into_iter();
+        rows.iter()
+            .map(|row| match row {
+                Err(lack) => Err(Declined::Speaker(lack.clone())),
+                Ok(row) => answers
+                    .next()
+                    .flatten()
+                    .ok_or_else(|| Declined::Missing(table.missing(row).unwrap_or_default())),
+            })
+            .collect()
+    }
+
+    /// The stated answer: vowels with calibrated probabilities, the most probable first.
+    pub(super) fn stated(&self, answer: &Answer) -> Result<Vec<(Vowel, f64)>, Declined> {
+        if answer.strangeness > self.calibration.strangest {
+            return Err(Declined::UnlikeAny);
+        }
+        let ln_p = self.calibration.apply(&answer.ln_probability);
         let mut ranked: Vec<(Vowel, f64)> = self
             .vowels
             .iter()
             .cloned()
-            .zip(
-                self.classifier
-                    .ln_probabilities(row)
-                    .into_iter()
-                    .map(f64::exp),
-            )
+            .zip(ln_p.into_iter().map(f64::exp))
             .collect();
         ranked.sort_by(|a, b| b.1.total_cmp(&a.1).then_with(|| a.0.cmp(&b.0)));
-        ranked
+        Ok(ranked)
     }
 
     /// The labels of a survey that this model does not know, with the number of their tokens.
     pub fn unknown_labels(&self, observations: &[Observation]) -> Vec<(Vowel, usize)> {
-        let mut counts = std::collections::BTreeMap::new();
+        let mut counts = BTreeMap::new();
         for vowel in observations.iter().filter_map(|o| o.vowel.as_ref()) {
             if self.vowels.binary_search(vowel).is_err() {
                 *counts.entry(vowel.clone()).or_insert(0) += 1;
@@ -169,23 +228,4 @@ impl Model {
         }
         counts.into_iter().collect()
     }
-}
-
-/// Asks several models about a survey, best first: each token gets the answer of the first model
-/// that has one, or the last model's reason for declining.
-pub fn identify_with(models: &[Model], observations: &[Observation]) -> Vec<Identification> {
-    let mut answers: Vec<Identification> = Vec::new();
-    for model in models {
-        let next = model.identify(observations);
-        if answers.is_empty() {
-            answers = next;
-            continue;
-        }
-        for (answer, next) in answers.iter_mut().zip(next) {
-            if answer.ranked.is_err() {
-                *answer = next;
-            }
-        }
-    }
-    answers
 }

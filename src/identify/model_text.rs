@@ -6,21 +6,15 @@
 
 use std::fmt::Write;
 
-use serde::Deserialize;
 use sha2::{Digest, Sha256};
-
-use crate::vowel::Vowel;
 
 use super::classifier::{Classifier, Kind};
 use super::discriminant::Discriminant;
-use super::evaluate::Accuracy;
-use super::logistic::Logistic;
-use super::model::{Model, TrainingRecord};
-use super::newton::Weights;
-use super::standard::Standard;
+use super::model::Model;
+use super::model_parse::Written;
 
 /// Version of the format written here, and the only one read.
-pub const FORMAT: u64 = 1;
+pub const FORMAT: u64 = 2;
 
 /// What the last line begins with.
 const CHECKSUM: &str = "# sha256 of all above: ";
@@ -64,74 +58,10 @@ impl Model {
     /// The text of the model.
     pub fn to_text(&self) -> String {
         let mut text = String::new();
-        let record = &self.record;
-        let accuracy = &record.accuracy;
-        let kind = match self.kind {
-            Kind::Logistic { penalty } => format!("\"logistic\"\npenalty = {penalty:?}"),
-            other => quoted(&other.to_string()),
-        };
-        let _ = write!(
-            text,
-            "isophone_model = {FORMAT}\nname = {name}\nclassifier = {kind}\nfeatures = {features}\n\
-             normalization = {normalization}\nvowels = {vowels}\n\n[training]\nprogram = {program}\n\
-             data = {data}\ncommand = {command}\ntokens = {tokens}\nleft_out = {left_out}\n\
-             speakers = {speakers}\nseed = {seed}\n\n[held_out]\nwhat = {what}\naccuracy = {share:?}\n\
-             low = {low:?}\nhigh = {high:?}\ncorrect = {correct}\ntokens = {tested}\n\
-             speakers = {tested_speakers}\n# rows: labels, columns: answers, in the order of `vowels`\n\
-             confusion = {confusion}\n\n",
-            name = quoted(&self.name),
-            features = list(self.features.iter().map(|f| quoted(&f.to_string()))),
-            normalization = quoted(&self.normalization.to_string()),
-            vowels = list(self.vowels.iter().map(|v| quoted(v.ipa()))),
-            program = quoted(&record.program),
-            data = lines(record.data.iter().map(|d| quoted(d))),
-            command = quoted(&record.command),
-            tokens = record.tokens,
-            left_out = record.left_out,
-            speakers = record.speakers,
-            seed = record.seed,
-            what = quoted(&record.held_out),
-            share = accuracy.share,
-            low = accuracy.low,
-            high = accuracy.high,
-            correct = accuracy.correct,
-            tested = accuracy.tokens,
-            tested_speakers = accuracy.speakers,
-            confusion = lines(
-                record
-                    .confusion
-                    .iter()
-                    .map(|row| list(row.iter().map(usize::to_string)))
-            ),
-        );
-        match &self.classifier {
-            Classifier::Logistic(logistic) => {
-                let _ = write!(
-                    text,
-                    "[logistic]\nmean = {}\ndeviation = {}\nintercept = {}\nslope = {}\n",
-                    numbers(&logistic.standard.mean),
-                    numbers(&logistic.standard.deviation),
-                    numbers(&logistic.weights.intercept),
-                    lines(logistic.weights.slope.iter().map(|row| numbers(row))),
-                );
-            }
-            Classifier::Discriminant(discriminant) => {
-                let means = discriminant.mean.iter().map(|mean| match mean {
-                    Some(mean) => numbers(mean),
-                    None => "[]".to_owned(),
-                });
-                let matrices = discriminant
-                    .covariance
-                    .iter()
-                    .map(|matrix| list(matrix.iter().map(|row| numbers(row))));
-                let _ = write!(
-                    text,
-                    "[discriminant]\nmean = {}\ncovariance = {}\n",
-                    lines(means),
-                    lines(matrices),
-                );
-            }
-        }
+        // Writing to a string does not fail.
+        let _ = self.write_head(&mut text);
+        let _ = self.write_record(&mut text);
+        let _ = self.write_numbers(&mut text);
         let sum = checksum(&text);
         let _ = writeln!(text, "{CHECKSUM}{sum}");
         text
@@ -162,206 +92,123 @@ impl Model {
             .map_err(|error| ModelError::Inconsistent(error.message().to_owned()))?;
         written.checked()
     }
-}
 
-/// What the file holds, before it is known to make sense.
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct Written {
-    #[serde(rename = "isophone_model")]
-    _format: u64,
-    name: String,
-    classifier: String,
-    penalty: Option<f64>,
-    features: Vec<String>,
-    normalization: String,
-    vowels: Vec<String>,
-    training: WrittenTraining,
-    held_out: WrittenHeldOut,
-    logistic: Option<WrittenLogistic>,
-    discriminant: Option<WrittenDiscriminant>,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct WrittenTraining {
-    program: String,
-    data: Vec<String>,
-    command: String,
-    tokens: usize,
-    left_out: usize,
-    speakers: usize,
-    seed: u64,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct WrittenHeldOut {
-    what: String,
-    accuracy: f64,
-    low: f64,
-    high: f64,
-    correct: usize,
-    tokens: usize,
-    speakers: usize,
-    confusion: Vec<Vec<usize>>,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct WrittenLogistic {
-    mean: Vec<f64>,
-    deviation: Vec<f64>,
-    intercept: Vec<f64>,
-    slope: Vec<Vec<f64>>,
-}
-
-#[derive(Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct WrittenDiscriminant {
-    mean: Vec<Vec<f64>>,
-    covariance: Vec<Vec<Vec<f64>>>,
-}
-
-impl Written {
-    fn checked(self) -> Result<Model, ModelError> {
-        let wrong = |what: &str| ModelError::Inconsistent(what.to_owned());
-        let features = self
-            .features
-            .iter()
-            .map(|name| {
-                name.parse()
-                    .map_err(|e| ModelError::Inconsistent(format!("{e}")))
-            })
-            .collect::<Result<Vec<_>, _>>()?;
-        let normalization = self
-            .normalization
-            .parse()
-            .map_err(|e| ModelError::Inconsistent(format!("{e}")))?;
-        let vowels: Vec<Vowel> = self.vowels.iter().map(|v| Vowel::from_ipa(v)).collect();
-        let kind = match (
-            self.classifier
-                .parse()
-                .map_err(|e| ModelError::Inconsistent(format!("{e}")))?,
-            self.penalty,
-        ) {
-            (Kind::Logistic { .. }, Some(penalty)) => Kind::Logistic { penalty },
-            (Kind::Logistic { .. }, None) => return Err(wrong("a logistic model has a penalty")),
-            (kind, _) => kind,
-        };
-        let (width, classes) = (features.len(), vowels.len());
-        if width == 0 || classes < 2 {
-            return Err(wrong("it has no features or fewer than two vowels"));
+    fn write_head(&self, text: &mut String) -> std::fmt::Result {
+        writeln!(text, "isophone_model = {FORMAT}")?;
+        writeln!(text, "name = {}", quoted(&self.name))?;
+        writeln!(text, "classifier = {}", quoted(&self.kind.to_string()))?;
+        match self.kind {
+            Kind::Logistic { penalty } => writeln!(text, "penalty = {penalty:?}")?,
+            Kind::Template { modes } => writeln!(text, "modes = {modes}")?,
+            Kind::Linear | Kind::Quadratic => {}
         }
-        if !vowels.windows(2).all(|pair| pair[0] < pair[1]) {
-            return Err(wrong("its vowels are not sorted, each once"));
-        }
-        let confusion = self.held_out.confusion;
-        if confusion.len() != classes || confusion.iter().any(|row| row.len() != classes) {
-            return Err(wrong(
-                "its confusion table has another size than its vowels",
-            ));
-        }
-        let classifier = match (kind, self.logistic, self.discriminant) {
-            (Kind::Logistic { .. }, Some(logistic), None) => logistic.checked(width, classes)?,
-            (Kind::Linear | Kind::Quadratic, None, Some(discriminant)) => {
-                discriminant.checked(width, classes)?
+        let features = self.features.iter().map(|f| quoted(&f.to_string()));
+        writeln!(text, "features = {}", list(features))?;
+        let normalization = quoted(&self.normalization.to_string());
+        writeln!(text, "normalization = {normalization}")?;
+        let vowels = self.vowels.iter().map(|v| quoted(v.ipa()));
+        writeln!(text, "vowels = {}", list(vowels))
+    }
+
+    fn write_record(&self, text: &mut String) -> std::fmt::Result {
+        let record = &self.record;
+        let accuracy = &record.accuracy;
+        writeln!(text, "\n[training]")?;
+        writeln!(text, "program = {}", quoted(&record.program))?;
+        writeln!(
+            text,
+            "data = {}",
+            lines(record.data.iter().map(|d| quoted(d)))
+        )?;
+        writeln!(text, "command = {}", quoted(&record.command))?;
+        writeln!(text, "tokens = {}", record.tokens)?;
+        writeln!(text, "left_out = {}", record.left_out)?;
+        writeln!(text, "speakers = {}", record.speakers)?;
+        writeln!(text, "seed = {}", record.seed)?;
+        writeln!(text, "\n[held_out]")?;
+        writeln!(text, "what = {}", quoted(&record.held_out))?;
+        writeln!(text, "accuracy = {:?}", accuracy.share)?;
+        writeln!(text, "low = {:?}", accuracy.low)?;
+        writeln!(text, "high = {:?}", accuracy.high)?;
+        writeln!(text, "correct = {}", accuracy.correct)?;
+        writeln!(text, "tokens = {}", accuracy.tokens)?;
+        writeln!(text, "speakers = {}", accuracy.speakers)?;
+        writeln!(
+            text,
+            "# rows: labels, columns: answers, in the order of `vowels`"
+        )?;
+        let confusion = record.confusion.iter();
+        let confusion = confusion.map(|row| list(row.iter().map(usize::to_string)));
+        writeln!(text, "confusion = {}", lines(confusion))?;
+        writeln!(
+            text,
+            "# by tenths of the stated probability: tokens, mean stated, share identified as labelled"
+        )?;
+        let bins = &record.reliability;
+        let tokens = bins.iter().map(|bin| bin.tokens.to_string());
+        writeln!(text, "reliability_tokens = {}", list(tokens))?;
+        let stated: Vec<f64> = bins.iter().map(|bin| bin.stated).collect();
+        writeln!(text, "reliability_stated = {}", numbers(&stated))?;
+        let found: Vec<f64> = bins.iter().map(|bin| bin.found).collect();
+        writeln!(text, "reliability_found = {}", numbers(&found))
+    }
+
+    fn write_numbers(&self, text: &mut String) -> std::fmt::Result {
+        writeln!(text, "\n[calibration]")?;
+        writeln!(text, "temperature = {:?}", self.calibration.temperature)?;
+        writeln!(text, "strangest = {:?}", self.calibration.strangest)?;
+        let usual = numbers(&self.trained.usual_variance);
+        writeln!(text, "usual_variance = {usual}")?;
+        match &self.trained.classifier {
+            Classifier::Logistic(logistic) => {
+                writeln!(text, "\n[logistic]")?;
+                writeln!(text, "mean = {}", numbers(&logistic.standard.mean))?;
+                writeln!(
+                    text,
+                    "deviation = {}",
+                    numbers(&logistic.standard.deviation)
+                )?;
+                writeln!(text, "intercept = {}", numbers(&logistic.weights.intercept))?;
+                let slope = logistic.weights.slope.iter().map(|row| numbers(row));
+                writeln!(text, "slope = {}", lines(slope))?;
             }
-            _ => return Err(wrong("its numbers are not those of its classifier")),
-        };
-        Ok(Model {
-            name: self.name,
-            kind,
-            features,
-            normalization,
-            vowels,
-            classifier,
-            record: TrainingRecord {
-                program: self.training.program,
-                data: self.training.data,
-                command: self.training.command,
-                tokens: self.training.tokens,
-                left_out: self.training.left_out,
-                speakers: self.training.speakers,
-                seed: self.training.seed,
-                held_out: self.held_out.what,
-                accuracy: Accuracy {
-                    share: self.held_out.accuracy,
-                    low: self.held_out.low,
-                    high: self.held_out.high,
-                    correct: self.held_out.correct,
-                    tokens: self.held_out.tokens,
-                    speakers: self.held_out.speakers,
-                },
-                confusion,
-            },
-        })
+            Classifier::Discriminant(discriminant) => {
+                write_discriminant(text, "discriminant", discriminant)?;
+            }
+            Classifier::Template(template) => {
+                writeln!(text, "\n[template]")?;
+                writeln!(text, "mean = {}", lines(means(&template.mean)))?;
+                let modes = template.modes.iter().map(|m| matrix(m));
+                writeln!(text, "modes = {}", lines(modes))?;
+                let within = template.within.iter().map(|m| matrix(m));
+                writeln!(text, "within = {}", lines(within))?;
+            }
+        }
+        if let Some(typical) = &self.trained.typical {
+            write_discriminant(text, "typical", typical)?;
+        }
+        Ok(())
     }
 }
 
-impl WrittenLogistic {
-    fn checked(self, width: usize, classes: usize) -> Result<Classifier, ModelError> {
-        let shape = self.mean.len() == width
-            && self.deviation.len() == width
-            && self.intercept.len() == classes
-            && self.slope.len() == classes
-            && self.slope.iter().all(|row| row.len() == width);
-        let finite = self
-            .mean
-            .iter()
-            .chain(&self.intercept)
-            .chain(self.slope.iter().flatten())
-            .all(|v| v.is_finite())
-            && self.deviation.iter().all(|d| d.is_finite() && *d > 0.0);
-        if !(shape && finite) {
-            return Err(ModelError::Inconsistent(
-                "its weights do not fit its features and vowels".to_owned(),
-            ));
-        }
-        Ok(Classifier::Logistic(Logistic {
-            standard: Standard {
-                mean: self.mean,
-                deviation: self.deviation,
-            },
-            weights: Weights {
-                intercept: self.intercept,
-                slope: self.slope,
-            },
-        }))
-    }
+fn write_discriminant(
+    text: &mut String,
+    name: &str,
+    discriminant: &Discriminant,
+) -> std::fmt::Result {
+    writeln!(text, "\n[{name}]")?;
+    writeln!(text, "mean = {}", lines(means(&discriminant.mean)))?;
+    let covariance = discriminant.covariance.iter().map(|m| matrix(m));
+    writeln!(text, "covariance = {}", lines(covariance))
 }
 
-impl WrittenDiscriminant {
-    fn checked(self, width: usize, classes: usize) -> Result<Classifier, ModelError> {
-        let wrong =
-            || ModelError::Inconsistent("its means and spreads do not fit its features".to_owned());
-        let present = self.mean.iter().filter(|mean| !mean.is_empty()).count();
-        let shape = self.mean.len() == classes
-            && present >= 2
-            && self.mean.iter().all(|m| m.is_empty() || m.len() == width)
-            && (self.covariance.len() == 1 || self.covariance.len() == present)
-            && self
-                .covariance
-                .iter()
-                .all(|m| m.len() == width && m.iter().all(|row| row.len() == width));
-        let finite = self
-            .mean
-            .iter()
-            .flatten()
-            .chain(self.covariance.iter().flatten().flatten())
-            .all(|v| v.is_finite());
-        if !(shape && finite) {
-            return Err(wrong());
-        }
-        let mean = self
-            .mean
-            .into_iter()
-            .map(|mean| (!mean.is_empty()).then_some(mean))
-            .collect();
-        Discriminant::of(mean, self.covariance)
-            .map(Classifier::Discriminant)
-            .map_err(|_| wrong())
-    }
+fn means(mean: &[Option<Vec<f64>>]) -> impl Iterator<Item = String> {
+    mean.iter()
+        .map(|mean| mean.as_deref().map_or_else(|| "[]".to_owned(), numbers))
+}
+
+fn matrix(matrix: &[Vec<f64>]) -> String {
+    list(matrix.iter().map(|row| numbers(row)))
 }
 
 fn checksum(text: &str) -> String {

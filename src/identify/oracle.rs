@@ -48,9 +48,10 @@ fn samples(rows: Vec<Vec<f64>>, class: Vec<usize>, classes: usize) -> Samples {
             .collect(),
         speakers: vec!["s".to_owned()],
         speaker: vec![0; rows.len()],
+        variance: vec![vec![0.0; width]; rows.len()],
         rows,
         class,
-        left_out: Default::default(),
+        lacking: Default::default(),
         incomplete: Vec::new(),
     }
 }
@@ -69,11 +70,16 @@ fn three_classes() -> Samples {
     samples(rows, class, 3)
 }
 
+fn answer(trained: &Trained, row: &[f64]) -> Vec<f64> {
+    let answers = trained.answers(&[row], &[&vec![0.0; row.len()]]);
+    answers[0].as_ref().unwrap().ln_probability.clone()
+}
+
 fn check(kind: Kind, expected: [[f64; 3]; 3]) {
     let samples = three_classes();
-    let classifier = Classifier::fit(kind, &samples).unwrap();
+    let trained = Trained::fit(kind, &samples).unwrap();
     for (row, expected) in [0, 17, 40].iter().zip(expected) {
-        let ln_p = classifier.ln_probabilities(&samples.rows[*row]);
+        let ln_p = answer(&trained, &samples.rows[*row]);
         assert!((ln_p.iter().map(|v| v.exp()).sum::<f64>() - 1.0).abs() < 1e-12);
         let found: Vec<f64> = ln_p.iter().map(|v| v.exp()).collect();
         for (found, expected) in found.iter().zip(expected) {
@@ -167,6 +173,7 @@ fn the_minimum_does_not_depend_on_the_start() {
         fewer.class.remove(n);
     }
     fewer.speaker.truncate(fewer.rows.len());
+    fewer.variance.truncate(fewer.rows.len());
     let cold = Logistic::fit(&fewer, 0.01).unwrap();
     let warm = Logistic::fit_from(&fewer, 0.01, Some(&fitted)).unwrap();
     for row in &samples.rows {
@@ -207,8 +214,8 @@ fn a_class_without_rows_is_never_chosen() {
         Kind::Linear,
         Kind::Quadratic,
     ] {
-        let classifier = Classifier::fit(kind, &with_empty).unwrap();
-        let ln_p = classifier.ln_probabilities(&with_empty.rows[0]);
+        let trained = Trained::fit(kind, &with_empty).unwrap();
+        let ln_p = answer(&trained, &with_empty.rows[0]);
         assert_eq!(ln_p[3].exp(), 0.0);
         assert!((ln_p.iter().map(|v| v.exp()).sum::<f64>() - 1.0).abs() < 1e-12);
     }

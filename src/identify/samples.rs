@@ -17,16 +17,19 @@ pub struct Samples {
     pub vowels: Vec<Vowel>,
     /// The speakers, sorted.
     pub speakers: Vec<String>,
-    /// One row per observation that has every column.
+    /// One row per labelled observation whose speaker could be normalized; NaN stands where a value
+    /// is missing.
     pub rows: Vec<Vec<f64>>,
+    /// Squared standard errors of the rows' values; 0 where nothing is known of them.
+    pub variance: Vec<Vec<f64>>,
     /// Class of each row.
     pub class: Vec<usize>,
     /// Speaker of each row, as a place in `speakers`.
     pub speaker: Vec<usize>,
-    /// Labelled observations that lack a column, by the reason.
-    pub left_out: BTreeMap<String, usize>,
-    /// Labelled observations of each speaker that lack a column, by class.
+    /// Labelled observations whose speaker could not be normalized, as (speaker, class).
     pub incomplete: Vec<(usize, usize)>,
+    /// Why rows are incomplete or missing, with their number.
+    pub lacking: BTreeMap<String, usize>,
 }
 
 impl Samples {
@@ -61,9 +64,10 @@ impl Samples {
         let mut samples = Self {
             features: features.to_vec(),
             rows: Vec::new(),
+            variance: Vec::new(),
             class: Vec::new(),
             speaker: Vec::new(),
-            left_out: BTreeMap::new(),
+            lacking: BTreeMap::new(),
             incomplete: Vec::new(),
             vowels,
             speakers,
@@ -77,12 +81,18 @@ impl Samples {
                 .unwrap_or_default();
             match fitted[table].row(observation) {
                 Ok(row) => {
+                    if let Some(missing) = fitted[table].missing(&row) {
+                        let reason = format!("no value for {missing}");
+                        *samples.lacking.entry(reason).or_insert(0) += 1;
+                    }
                     samples.rows.push(row);
+                    samples.variance.push(fitted[table].variance(observation));
                     samples.class.push(class);
                     samples.speaker.push(speaker);
                 }
-                Err(reason) => {
-                    *samples.left_out.entry(reason.to_string()).or_insert(0) += 1;
+                Err(lack) => {
+                    let reason = format!("the speaker has {lack}");
+                    *samples.lacking.entry(reason).or_insert(0) += 1;
                     samples.incomplete.push((speaker, class));
                 }
             }
@@ -95,15 +105,38 @@ impl Samples {
         let kept: Vec<usize> = (0..self.rows.len())
             .filter(|row| keep(self.speaker[*row]))
             .collect();
+        self.subset(&kept)
+    }
+
+    /// Some rows only, in the order given; lists of vowels and speakers stay as they are.
+    pub fn subset(&self, kept: &[usize]) -> Self {
         Self {
             features: self.features.clone(),
             vowels: self.vowels.clone(),
             speakers: self.speakers.clone(),
             rows: kept.iter().map(|row| self.rows[*row].clone()).collect(),
+            variance: kept.iter().map(|row| self.variance[*row].clone()).collect(),
             class: kept.iter().map(|row| self.class[*row]).collect(),
             speaker: kept.iter().map(|row| self.speaker[*row]).collect(),
-            left_out: BTreeMap::new(),
+            lacking: BTreeMap::new(),
             incomplete: Vec::new(),
         }
+    }
+
+    /// The rows that have a value in every column.
+    pub fn complete(&self) -> Self {
+        let kept: Vec<usize> = (0..self.rows.len())
+            .filter(|row| self.rows[*row].iter().all(|v| v.is_finite()))
+            .collect();
+        self.subset(&kept)
+    }
+
+    /// The rows of each speaker who has any, in the order of the speakers.
+    pub fn by_speaker(&self) -> Vec<(usize, Vec<usize>)> {
+        let mut rows: BTreeMap<usize, Vec<usize>> = BTreeMap::new();
+        for (row, speaker) in self.speaker.iter().enumerate() {
+            rows.entry(*speaker).or_default().push(row);
+        }
+        rows.into_iter().collect()
     }
 }

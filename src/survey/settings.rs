@@ -3,7 +3,7 @@
 //! Typed twice: as asked ([`Asked`], straight from the file, nothing unknown accepted), and as
 //! checked ([`Settings`], every value there and allowed).
 
-use std::collections::BTreeSet;
+use std::collections::{BTreeMap, BTreeSet};
 use std::path::PathBuf;
 
 use serde::Deserialize;
@@ -13,7 +13,7 @@ use super::Overrides;
 use crate::normalize::Method;
 use crate::report::Nature;
 use crate::segments::LabelColumns;
-use crate::vowel::Notation;
+use crate::vowel::{Notation, OwnTable, OwnTableError};
 
 /// What `survey.toml` may say. Everything may be left out.
 #[derive(Debug, Clone, PartialEq, Eq, Default, Deserialize)]
@@ -45,6 +45,8 @@ pub(super) struct AskedRecordings {
 pub(super) struct AskedLabels {
     file: Option<String>,
     pub(super) notation: Option<String>,
+    /// The survey's own labels, each with its IPA vowel or nothing.
+    own: Option<BTreeMap<String, String>>,
     vowels: Option<Vec<String>>,
     pub(super) hidden: Option<bool>,
     speaker_from: Option<AskedSpeakerFrom>,
@@ -180,6 +182,9 @@ pub enum SettingsError {
         /// The names there are.
         expected: String,
     },
+    /// A meaning of one of the survey's own labels that is no vowel.
+    #[error("`own`: {0}")]
+    Own(#[from] OwnTableError),
     /// A path that leaves the survey's folder.
     #[error("`{key}` is `{found}`; expected a name inside the survey's folder")]
     Outside {
@@ -197,6 +202,9 @@ impl SettingsError {
             Self::Parse { .. } => "the README lists what a survey file may say",
             Self::NotUtf8 => "save the file again as UTF-8",
             Self::NotKnown { .. } => "use one of the names, or leave the setting out",
+            Self::Own(_) => {
+                "write each of the survey's own labels with its IPA vowel, or with \"\""
+            }
             Self::Outside { .. } => "move or link the data into the survey's folder",
         }
     }
@@ -255,6 +263,13 @@ impl Asked {
                     }
                 })?),
             };
+        let notation = match &self.labels.own {
+            None => notation,
+            Some(own) => {
+                let pairs = own.iter().map(|(l, m)| (l.as_str(), m.as_str()));
+                Some(Notation::Own(OwnTable::new(pairs, notation)?))
+            }
+        };
         let method = match self.normalize.method.as_deref() {
             None | Some("auto") => None,
             Some(name) => Some(
@@ -393,6 +408,25 @@ mod tests {
         assert_eq!(settings.label_columns.label, "phone");
         assert_eq!(settings.group.as_deref(), Some("village"));
         assert_eq!(settings.title.as_deref(), Some("The vowels of my valley"));
+    }
+
+    #[test]
+    fn own_labels_come_before_the_notation() {
+        let settings = settings(
+            "[labels]\nnotation = \"arpabet\"\n[labels.own]\nshort-a = \"æ\"\ntap = \"\"\n",
+        )
+        .expect("settings");
+        let notation = settings.notation.expect("a notation");
+        let read = |label: &str| notation.read(label);
+        assert_eq!(read("short-a"), Notation::Ipa.read("æ"));
+        assert_eq!(read("tap"), Notation::Ipa.read("t"));
+        assert_eq!(read("iy"), Notation::Ipa.read("i"));
+    }
+
+    #[test]
+    fn an_own_label_must_mean_a_vowel() {
+        let error = settings("[labels.own]\nx = \"heed\"\n").expect_err("no vowel");
+        assert!(error.to_string().contains("the label `x`"), "{error}");
     }
 
     #[test]

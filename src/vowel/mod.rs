@@ -2,11 +2,16 @@
 
 mod arpabet;
 mod ipa;
+mod lexical;
 mod notation;
+mod own;
+mod xsampa;
 
 use std::fmt;
 
+pub use lexical::ReferenceAccent;
 pub use notation::Notation;
+pub use own::{OwnTable, OwnTableError};
 
 /// A vowel quality, written in IPA in one canonical form.
 ///

@@ -1,6 +1,6 @@
 //! The notations labels come in, and which of them a set of labels is written in.
 
-use super::{LabelKind, arpabet, ipa};
+use super::{LabelKind, OwnTable, ReferenceAccent, arpabet, ipa, lexical, xsampa};
 
 /// How a survey writes its labels.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -10,11 +10,29 @@ pub enum Notation {
     /// ARPABET, upper or lower case, stress digits allowed; also the lower-case phone set of
     /// hand-aligned read sentences (`ux`, `ax-h`, `pcl`, `h#` …).
     Arpabet,
+    /// X-SAMPA symbols.
+    XSampa,
+    /// Keywords of lexical sets, with the values of an accent.
+    LexicalSets(ReferenceAccent),
+    /// A survey's own labels.
+    Own(OwnTable),
 }
 
 impl Notation {
     /// The notations by the names a survey file and the options know them by.
-    pub const NAMED: [(&'static str, Self); 2] = [("ipa", Self::Ipa), ("arpabet", Self::Arpabet)];
+    pub const NAMED: [(&'static str, Self); 5] = [
+        ("ipa", Self::Ipa),
+        ("arpabet", Self::Arpabet),
+        ("x-sampa", Self::XSampa),
+        (
+            "lexical-sets",
+            Self::LexicalSets(ReferenceAccent::GeneralAmerican),
+        ),
+        (
+            "lexical-sets-british",
+            Self::LexicalSets(ReferenceAccent::SouthernBritish),
+        ),
+    ];
 
     /// The notation of this name.
     pub fn named(name: &str) -> Option<Self> {
@@ -27,6 +45,10 @@ impl Notation {
         match self {
             Self::Ipa => "ipa",
             Self::Arpabet => "arpabet",
+            Self::XSampa => "x-sampa",
+            Self::LexicalSets(ReferenceAccent::GeneralAmerican) => "lexical-sets",
+            Self::LexicalSets(ReferenceAccent::SouthernBritish) => "lexical-sets-british",
+            Self::Own(_) => "own",
         }
     }
 
@@ -49,10 +71,14 @@ impl Notation {
         match self {
             Self::Ipa => ipa::read(label),
             Self::Arpabet => arpabet::read(label),
+            Self::XSampa => xsampa::read(label),
+            Self::LexicalSets(accent) => lexical::read(label, *accent),
+            Self::Own(table) => table.read(label),
         }
     }
 
-    /// The notation that knows most of these labels; IPA where several know as many.
+    /// The notation that knows most of these labels; the first of [`Self::NAMED`] where several know
+    /// as many.
     ///
     /// For surveys that do not say how they write their labels. The labels are taken with their
     /// repetitions, so that common ones count for more.
@@ -64,11 +90,15 @@ impl Notation {
                 .filter(|label| notation.read(label) != LabelKind::Unknown)
                 .count()
         };
-        if known(&Self::Arpabet) > known(&Self::Ipa) {
-            Self::Arpabet
-        } else {
-            Self::Ipa
+        let mut best = Self::Ipa;
+        let mut most = known(&best);
+        for (_, notation) in Self::NAMED {
+            let count = known(&notation);
+            if count > most {
+                (best, most) = (notation, count);
+            }
         }
+        best
     }
 }
 
@@ -81,6 +111,19 @@ mod tests {
         assert_eq!(Notation::guess(["i", "ɛ", "ɝ", "u"]), Notation::Ipa);
         assert_eq!(Notation::guess(["h#", "sh", "iy", "k"]), Notation::Arpabet);
         assert_eq!(Notation::guess(["IY1", "ER0", "SIL"]), Notation::Arpabet);
+        assert_eq!(Notation::guess(["I", "{", "tS", "@"]), Notation::XSampa);
+        assert_eq!(
+            Notation::guess(["FLEECE", "TRAP", "GOAT"]),
+            Notation::LexicalSets(ReferenceAccent::GeneralAmerican)
+        );
         assert_eq!(Notation::guess([]), Notation::Ipa);
+    }
+    #[test]
+    fn names_lead_back_to_their_notation() {
+        for (name, notation) in Notation::NAMED {
+            assert_eq!(notation.name(), name);
+            assert_eq!(Notation::named(name), Some(notation));
+        }
+        assert_eq!(Notation::named("runes"), None);
     }
 }
