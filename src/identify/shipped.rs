@@ -4,9 +4,11 @@ use super::model::Model;
 use super::model_text::ModelError;
 
 /// Texts of the models in `models/`, best first: the first that has an answer is asked.
-const MODELS: [&str; 2] = [
+const MODELS: [&str; 4] = [
     include_str!("../../models/american-english-movement.toml"),
+    include_str!("../../models/american-english-movement-template.toml"),
     include_str!("../../models/american-english-steady.toml"),
+    include_str!("../../models/american-english-steady-template.toml"),
 ];
 
 /// The models for American English, best first.
