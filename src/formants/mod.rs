@@ -3,6 +3,7 @@
 //! [`analyse`] weighs many hypotheses for one span; choosing between them takes all tokens of a
 //! speaker and is the work of [`crate::tokens`].
 
+pub mod conditions;
 pub mod consensus;
 mod grid;
 pub mod pitch;
@@ -10,24 +11,9 @@ pub mod voice;
 
 use crate::audio::{ANALYSIS_RATE_HZ, Waveform};
 use crate::segments::VowelSpan;
+pub use conditions::{Channel, Conditions};
 use consensus::Hypothesis;
 use pitch::{PitchCandidate, PitchSignal};
-
-/// What holds for a whole recording and bears on every reading in it.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Conditions {
-    /// Upper edge of what the recording holds, in hertz.
-    pub band_edge_hz: f64,
-}
-
-impl Conditions {
-    /// Finds the conditions of one waveform.
-    pub fn find(waveform: &Waveform) -> Self {
-        Self {
-            band_edge_hz: waveform.band_edge_hz,
-        }
-    }
-}
 
 /// Points of a token at which it is analysed, as proportions of its duration: 0.1 to 0.9 in steps
 /// of 0.05.
@@ -41,6 +27,8 @@ pub fn proportion(index: usize) -> f64 {
 /// All that was found in one span before the speaker is known.
 #[derive(Debug, Clone)]
 pub struct SpanAnalysis {
+    /// What holds for its recording.
+    pub conditions: Conditions,
     /// One entry per analysis point.
     pub points: Vec<PointAnalysis>,
 }
@@ -123,7 +111,7 @@ pub fn analyse(
     if energy <= SILENCE_RMS * SILENCE_RMS * (last - first) as f64 {
         return Err(Unmeasured::Silent);
     }
-    let mut grid = grid::Grid::new();
+    let mut grid = grid::Grid::new(conditions);
     let pitch = PitchSignal::new(samples, first, last);
     let mut readings = Vec::with_capacity(grid::READINGS);
     let times: Vec<f64> = (0..POINTS)
@@ -141,12 +129,7 @@ pub fn analyse(
         .zip(f0)
         .map(|((time_s, pitch), f0_hz)| {
             readings.clear();
-            grid.read(
-                samples,
-                centre(time_s),
-                conditions.band_edge_hz,
-                &mut readings,
-            );
+            grid.read(samples, centre(time_s), &mut readings);
             let hypotheses = hypotheses(&mut grid, &readings, f0_hz.unwrap_or(0.0));
             PointAnalysis {
                 time_s,
@@ -158,7 +141,10 @@ pub fn analyse(
     if points.iter().all(|p| p.hypotheses.is_empty()) {
         return Err(Unmeasured::NoResonances);
     }
-    Ok(SpanAnalysis { points })
+    Ok(SpanAnalysis {
+        conditions: conditions.without_noise(),
+        points,
+    })
 }
 
 /// F0 from which harmonics are far enough apart to pull a predicted F1, in hertz.
@@ -176,7 +162,7 @@ const HARMONICS_ONLY_HZ: f64 = 300.0;
 const FEWEST_REMADE: usize = 8;
 
 fn hypotheses(
-    grid: &mut grid::Grid,
+    grid: &mut grid::Grid<'_>,
     readings: &[grid::GridReading],
     f0_hz: f64,
 ) -> Vec<Hypothesis> {

@@ -248,7 +248,7 @@ mod tests {
                     sd_hz: [Some(12.345), None, None],
                 },
                 track: Vec::new(),
-                doubts: vec![Doubt::Disagreement(3), Doubt::HighPitch],
+                doubts: vec![Doubt::Uncertain(3), Doubt::HighPitch],
             }),
         }
     }

@@ -1,11 +1,13 @@
 //! All spans of one speaker, read together, to measured tokens.
 
+mod doubts;
 mod error;
 mod path;
 mod reading;
 mod size;
 mod value;
 
+pub use doubts::Doubt;
 pub use reading::read_speaker;
 
 use crate::formants::Unmeasured;
@@ -59,28 +61,6 @@ pub struct TrackPoint {
     pub time_s: f64,
     /// What was read there.
     pub point: FormantPoint,
-}
-
-/// A reason to look at a token before trusting it.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
-pub enum Doubt {
-    /// The hypotheses disagree about the formant of this number (1 to 3).
-    Disagreement(u8),
-    /// F0 stands above 0.8 of F1: the first harmonic and the first formant cannot be told apart.
-    HighPitch,
-    /// The value stands far from the speaker's other tokens of the same label.
-    Outlier,
-}
-
-impl Doubt {
-    /// The doubt as the tables write it.
-    pub fn text(self) -> String {
-        match self {
-            Self::Disagreement(number) => format!("F{number} uncertain"),
-            Self::HighPitch => "F0 near F1".to_owned(),
-            Self::Outlier => "unlike the speaker's other tokens".to_owned(),
-        }
-    }
 }
 
 /// What later stages need of one vowel token, whether this program measured it or a table gives it.

@@ -3,8 +3,8 @@
 
 use super::path::most_believable;
 use super::size::Size;
-use super::{Doubt, FormantPoint, PROPORTIONS, Reading, Token, TrackPoint};
-use super::{error, value};
+use super::{FormantPoint, PROPORTIONS, Reading, Token, TrackPoint};
+use super::{doubts, error, value};
 use crate::formants::consensus::Hypothesis;
 use crate::formants::voice::contour;
 use crate::formants::{SpanAnalysis, Unmeasured, proportion};
@@ -86,7 +86,7 @@ fn read_token(
 ) -> Result<Reading, Unmeasured> {
     let f0 = contour(&analysis.pitch(), median_hz);
     let measured = value::along(&analysis.points, path, &f0, |h| belief(h, size));
-    let points: Vec<FormantPoint> = measured
+    let mut points: Vec<FormantPoint> = measured
         .into_iter()
         .map(|(mut point, evidence)| {
             for k in 0..3 {
@@ -95,6 +95,15 @@ fn read_token(
             point
         })
         .collect();
+    let steady = steadiest(&points).ok_or(Unmeasured::NoResonances)?;
+    // What lies outside the channel was not heard.
+    let heard = analysis.conditions.lower_edge_hz..=analysis.conditions.upper_edge_hz;
+    for point in &mut points {
+        for k in 0..3 {
+            point.formant_hz[k] = point.formant_hz[k].filter(|hz| heard.contains(hz));
+            point.sd_hz[k] = point.sd_hz[k].filter(|_| point.formant_hz[k].is_some());
+        }
+    }
     let track: Vec<TrackPoint> = PROPORTIONS
         .iter()
         .map(|&p| {
@@ -112,15 +121,8 @@ fn read_token(
             }
         })
         .collect();
-    let steady = steadiest(&points).ok_or(Unmeasured::NoResonances)?;
     let value = points[steady];
-    let mut doubts = Vec::new();
-    if let (Some(f0), Some(f1)) = (value.f0_hz, value.formant_hz[0])
-        && f0 > 0.8 * f1
-    {
-        doubts.push(Doubt::HighPitch);
-    }
-    let _ = span;
+    let doubts = doubts::about(&analysis.conditions, span.duration_s(), &points, &value);
     Ok(Reading {
         at_s: analysis.points[steady].time_s,
         value,
