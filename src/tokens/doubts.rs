@@ -50,7 +50,10 @@ impl Doubt {
 ///
 /// A tenth is the gross error of the field's comparisons; the shares are those at which about a
 /// tenth of the tokens of `hvd-words` carry one of the three doubts.
-const WIDE: [f64; 3] = [0.085, 0.055, 0.05];
+const WIDE: [f64; 3] = [0.075, 0.05, 0.055];
+
+/// Points whose bar is wide before it is a doubt.
+const FEWEST_WIDE: usize = 2;
 
 /// F0 above this share of F1 is a doubt (common practice: the first harmonic is then all that shows
 /// of F1).
@@ -82,7 +85,7 @@ pub(super) fn about(
             _ => false,
         };
         let count = inner.iter().filter(|p| wide(p)).count();
-        if wide(value) || count * 3 >= inner.len() {
+        if count >= FEWEST_WIDE {
             doubts.push(Doubt::Uncertain(k as u8 + 1));
         }
     }
