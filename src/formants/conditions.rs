@@ -173,7 +173,7 @@ impl Conditions {
 
 /// Recordings with less signal above the noise than this have the noise taken out, in decibels: in
 /// quieter ones the pauses hold more breath and echo than room.
-const NOISY_DB: f64 = 22.0;
+const NOISY_DB: f64 = 18.0;
 
 /// Noise power taken out of every bin, and the share of a bin's power that always stays.
 const NOISE_TAKEN: f32 = 1.0;
