@@ -128,6 +128,14 @@ pub fn write(path: &Path, bytes: &[u8]) -> Result<(), FileError> {
     replacement.finish()
 }
 
+/// Writes a file that can be made again at any time, without waiting for the disk.
+///
+/// # Errors
+/// [`FileError`] with the path.
+pub fn write_remakeable(path: &Path, bytes: &[u8]) -> Result<(), FileError> {
+    fs::write(path, bytes).map_err(|source| FileError::new(path, "write it", source))
+}
+
 /// A file being written beside the one it will replace.
 ///
 /// Dropped without [`Replacement::finish`], it takes its unfinished file away and leaves the old

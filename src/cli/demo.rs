@@ -56,7 +56,7 @@ fn write(made: &DemoSurvey, folder: &Path) -> Result<(), Failure> {
     let recordings = folder.join("recordings");
     files::create_folder(&recordings)?;
     for (name, bytes) in &made.recordings {
-        files::write(&recordings.join(name), bytes)?;
+        files::write_remakeable(&recordings.join(name), bytes)?;
     }
     files::write(&folder.join("labels.csv"), made.labels_csv.as_bytes())?;
     files::write(&folder.join("speakers.csv"), made.speakers_csv.as_bytes())?;
