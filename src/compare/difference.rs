@@ -9,7 +9,7 @@ use statrs::distribution::{ContinuousCDF, StudentsT};
 
 use super::plane::{quadratic_form, scatter};
 use super::resample::{Resampling, Test, permute, quantile};
-use super::sample::{Column, Layout, Side};
+use super::sample::{Column, Layout, Side, bootstrap, seconds};
 use super::single;
 
 /// Difference of two groups: the second less the first.
@@ -97,8 +97,9 @@ fn compare(
     random: &mut Pcg64,
 ) -> Vec<Difference> {
     let statistics = |groups: &[usize], sizes: &mut [f64]| {
+        let second = seconds(groups);
         for (column, size) in columns.iter().zip(sizes) {
-            let e = column.estimate(layout, groups);
+            let e = column.estimate(layout, &second);
             *size = match e.error() {
                 Some(error) if error > 0.0 => e.difference().abs() / error,
                 // No spread at all: any difference is infinitely many errors.
@@ -115,11 +116,14 @@ fn compare(
         columns.len(),
         statistics,
     );
+    let second = seconds(groups);
+    let draws = bootstrap(layout, columns, resampling.replicates, random);
     columns
         .iter()
         .zip(tests)
-        .map(|(column, test)| {
-            let found = column.estimate(layout, groups);
+        .zip(draws)
+        .map(|((column, test), mut draws)| {
+            let found = column.estimate(layout, &second);
             let value = found.difference();
             let interval = found.error().map(|error| {
                 if error == 0.0 {
@@ -128,7 +132,6 @@ fn compare(
                 let stretch = found
                     .freedom()
                     .map_or(1.0, |freedom| student_quantile(freedom) / NORMAL_975);
-                let mut draws = column.bootstrap(layout, resampling.replicates, random);
                 draws.sort_by(f64::total_cmp);
                 let at = |share| value + stretch * quantile(&draws, share).unwrap_or(0.0);
                 [at(0.5 - CONFIDENCE / 2.0), at(0.5 + CONFIDENCE / 2.0)]
@@ -233,7 +236,8 @@ pub fn place_test(
     let total = scatter(&centred, [0.0, 0.0]);
     quadratic_form(total, [1.0, 1.0])?;
     let statistic = |groups: &[usize], size: &mut [f64]| {
-        let d = [0, 1].map(|k| axes[k].difference(&layout, groups));
+        let second = seconds(groups);
+        let d = [0, 1].map(|k| axes[k].difference(&layout, &second));
         size[0] = quadratic_form(total, d).unwrap_or(0.0);
     };
     let (groups, strata) = (&layout.groups, &layout.strata);

@@ -18,6 +18,7 @@ pub struct Side {
 pub(super) struct Layout {
     /// Which of the speakers given enter.
     pub(super) kept: Vec<usize>,
+    /// Group of each speaker.
     pub(super) groups: Vec<usize>,
     /// Stratum of each speaker, numbered from 0 without gaps.
     pub(super) strata: Vec<usize>,
@@ -80,6 +81,8 @@ impl Layout {
 pub(super) struct Column {
     /// Deviations from the stratum means, which keeps sums of squares exact.
     pub(super) centred: Vec<f64>,
+    /// Their squares.
+    squared: Vec<f64>,
     /// Mean of each stratum.
     means: Vec<f64>,
     /// Sum of squares of the deviations in each stratum.
@@ -103,6 +106,7 @@ impl Column {
             squares[*s] += v * v;
         }
         Self {
+            squared: centred.iter().map(|v| v * v).collect(),
             centred,
             means,
             squares,
@@ -110,39 +114,39 @@ impl Column {
     }
 
     /// The second group's mean less the first's, for an arrangement of the groups.
-    pub(super) fn difference(&self, layout: &Layout, groups: &[usize]) -> f64 {
-        let mut sums = vec![0.0; layout.counts.len()];
-        for ((v, g), s) in self.centred.iter().zip(groups).zip(&layout.strata) {
-            if *g == 1 {
-                sums[*s] += v;
-            }
-        }
+    pub(super) fn difference(&self, layout: &Layout, second: &[f64]) -> f64 {
         // The deviations of a stratum sum to zero: what the second group has, the first lacks.
-        let parts = sums.iter().zip(&layout.counts).zip(&layout.weights);
-        parts
-            .map(|((sum, [a, b]), weight)| weight * sum * (1.0 / b + 1.0 / a))
+        let part = |sum: f64, s: usize| {
+            let [a, b] = layout.counts[s];
+            layout.weights[s] * sum * (1.0 / b + 1.0 / a)
+        };
+        if layout.counts.len() == 1 {
+            return part(dot(&self.centred, second), 0);
+        }
+        let mut sums = vec![0.0; layout.counts.len()];
+        for ((v, g), s) in self.centred.iter().zip(second).zip(&layout.strata) {
+            sums[*s] += v * g;
+        }
+        sums.into_iter()
+            .enumerate()
+            .map(|(s, sum)| part(sum, s))
             .sum()
     }
 
-    /// Means and spreads for an arrangement of the groups.
-    pub(super) fn estimate(&self, layout: &Layout, groups: &[usize]) -> Estimate {
-        let mut second = vec![(0.0, 0.0); layout.counts.len()];
-        for ((v, g), s) in self.centred.iter().zip(groups).zip(&layout.strata) {
-            if *g == 1 {
-                second[*s].0 += v;
-                second[*s].1 += v * v;
-            }
-        }
+    /// Means and spreads for an arrangement of the groups: 1 for each speaker of the second.
+    pub(super) fn estimate(&self, layout: &Layout, second: &[f64]) -> Estimate {
         let mut e = Estimate::default();
-        for (s, (sum, squares)) in second.into_iter().enumerate() {
-            let weight = layout.weights[s];
-            let cells = [(-sum, self.squares[s] - squares), (sum, squares)];
-            for (g, (sum, squares)) in cells.into_iter().enumerate() {
-                let n = layout.counts[s][g];
-                e.means[g] += weight * (self.means[s] + sum / n);
-                e.variance[g] += (squares - sum * sum / n).max(0.0);
-                e.freedom[g] += n - 1.0;
-                e.leverage[g] += weight * weight / n;
+        if layout.counts.len() == 1 {
+            let (sum, squares) = (dot(&self.centred, second), dot(&self.squared, second));
+            self.add_stratum(&mut e, layout, 0, sum, squares);
+        } else {
+            let mut sums = vec![(0.0, 0.0); layout.counts.len()];
+            for ((v, g), s) in self.centred.iter().zip(second).zip(&layout.strata) {
+                sums[*s].0 += v * g;
+                sums[*s].1 += v * v * g;
+            }
+            for (s, (sum, squares)) in sums.into_iter().enumerate() {
+                self.add_stratum(&mut e, layout, s, sum, squares);
             }
         }
         for g in 0..2 {
@@ -151,42 +155,103 @@ impl Column {
         e
     }
 
-    /// Errors of the difference in surveys drawn from this one: each group's speakers drawn anew
-    /// with replacement, as deviations from the mean of their group and stratum times √(n/(n−1)).
-    pub(super) fn bootstrap(
-        &self,
-        layout: &Layout,
-        replicates: usize,
-        random: &mut Pcg64,
-    ) -> Vec<f64> {
+    /// Adds one stratum, given the second group's sum of deviations and of their squares there.
+    fn add_stratum(&self, e: &mut Estimate, layout: &Layout, s: usize, sum: f64, squares: f64) {
+        let weight = layout.weights[s];
+        let cells = [(-sum, self.squares[s] - squares), (sum, squares)];
+        for (g, (sum, squares)) in cells.into_iter().enumerate() {
+            let n = layout.counts[s][g];
+            e.means[g] += weight * (self.means[s] + sum / n);
+            e.variance[g] += (squares - sum * sum / n).max(0.0);
+            e.freedom[g] += n - 1.0;
+            e.leverage[g] += weight * weight / n;
+        }
+    }
+
+    /// Deviations from the mean of group and stratum times √(n/(n−1)), so that their spread is not
+    /// too small; zero for speakers alone in theirs.
+    fn residuals(&self, layout: &Layout) -> Vec<f64> {
         let mut sums = vec![[0.0; 2]; layout.counts.len()];
         for ((v, g), s) in self.centred.iter().zip(&layout.groups).zip(&layout.strata) {
             sums[*s][*g] += v;
         }
-        let mut residuals: [Vec<f64>; 2] = [Vec::new(), Vec::new()];
-        for ((v, g), s) in self.centred.iter().zip(&layout.groups).zip(&layout.strata) {
-            let n = layout.counts[*s][*g];
-            if n > 1.0 {
-                residuals[*g].push((v - sums[*s][*g] / n) * (n / (n - 1.0)).sqrt());
-            }
-        }
-        (0..replicates)
-            .map(|_| {
-                let mut error = 0.0;
-                for (counts, weight) in layout.counts.iter().zip(&layout.weights) {
-                    for (g, sign) in [(0, -1.0), (1, 1.0)] {
-                        let pool = &residuals[g];
-                        let draws = 0..counts[g] as usize;
-                        let sum: f64 = draws
-                            .map(|_| pool[random.random_range(0..pool.len())])
-                            .sum();
-                        error += sign * weight * sum / counts[g];
-                    }
+        let seats = self.centred.iter().zip(&layout.groups).zip(&layout.strata);
+        seats
+            .map(|((v, g), s)| {
+                let n = layout.counts[*s][*g];
+                if n > 1.0 {
+                    (v - sums[*s][*g] / n) * (n / (n - 1.0)).sqrt()
+                } else {
+                    0.0
                 }
-                error
             })
             .collect()
     }
+}
+
+/// Errors of the differences in surveys drawn from this one: each group's speakers drawn anew with
+/// replacement. Every column is drawn with the same speakers.
+///
+/// *Shape and units*: an error for each column (outer) and replicate, in the column's unit; empty
+/// where a group has no two speakers in any stratum.
+pub(super) fn bootstrap(
+    layout: &Layout,
+    columns: &[Column],
+    replicates: usize,
+    random: &mut Pcg64,
+) -> Vec<Vec<f64>> {
+    // Only speakers with company in their group and stratum have a deviation to lend.
+    let pools = [0, 1].map(|group| -> Vec<usize> {
+        let seats = layout.groups.iter().zip(&layout.strata).enumerate();
+        seats
+            .filter(|(_, (g, s))| **g == group && layout.counts[**s][group] > 1.0)
+            .map(|(n, _)| n)
+            .collect()
+    });
+    if pools.iter().any(Vec::is_empty) {
+        return vec![Vec::new(); columns.len()];
+    }
+    let residuals: Vec<Vec<f64>> = columns.iter().map(|c| c.residuals(layout)).collect();
+    let mut errors = vec![Vec::with_capacity(replicates); columns.len()];
+    let mut drawn = Vec::new();
+    for _ in 0..replicates {
+        let mut error = vec![0.0; columns.len()];
+        for (counts, weight) in layout.counts.iter().zip(&layout.weights) {
+            for (g, sign) in [(0, -1.0), (1, 1.0)] {
+                drawn.clear();
+                let pool = &pools[g];
+                let draws = 0..counts[g] as usize;
+                drawn.extend(draws.map(|_| pool[random.random_range(0..pool.len())]));
+                for (error, residual) in error.iter_mut().zip(&residuals) {
+                    let sum: f64 = drawn.iter().map(|n| residual[*n]).sum();
+                    *error += sign * weight * sum / counts[g];
+                }
+            }
+        }
+        for (errors, error) in errors.iter_mut().zip(error) {
+            errors.push(error);
+        }
+    }
+    errors
+}
+
+/// Sum of products, in four strands that the processor can do at once.
+fn dot(a: &[f64], b: &[f64]) -> f64 {
+    let mut strands = [0.0; 4];
+    let (fours_a, rest_a) = a.as_chunks::<4>();
+    let (fours_b, rest_b) = b.as_chunks::<4>();
+    for (x, y) in fours_a.iter().zip(fours_b) {
+        for k in 0..4 {
+            strands[k] += x[k] * y[k];
+        }
+    }
+    let rest: f64 = rest_a.iter().zip(rest_b).map(|(x, y)| x * y).sum();
+    strands.iter().sum::<f64>() + rest
+}
+
+/// An arrangement as numbers: 1 for each speaker of the second group.
+pub(super) fn seconds(groups: &[usize]) -> Vec<f64> {
+    groups.iter().map(|g| *g as f64).collect()
 }
 
 /// Group means and spreads.
@@ -251,10 +316,11 @@ mod tests {
         ];
         let layout = Layout::of(&sides, |_| true).unwrap();
         let column = Column::of(&layout, &[1.0, 3.0, 5.0, 10.0, 12.0, 16.0]);
-        let e = column.estimate(&layout, &layout.groups);
+        let second = seconds(&layout.groups);
+        let e = column.estimate(&layout, &second);
         // Equal weights 2/3 and 2/3: means (2 + 10)/2 and (5 + 14)/2.
         assert!((e.means[0] - 6.0).abs() < 1e-12 && (e.means[1] - 9.5).abs() < 1e-12);
-        assert!((column.difference(&layout, &layout.groups) - 3.5).abs() < 1e-12);
+        assert!((column.difference(&layout, &second) - 3.5).abs() < 1e-12);
         // Variances 2 (one degree) and 8 (one degree); leverages (1/4)(1/2 + 1) each.
         assert!((e.error().unwrap() - (10.0f64 * 0.375).sqrt()).abs() < 1e-12);
     }

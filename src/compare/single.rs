@@ -13,7 +13,7 @@ use statrs::distribution::{ContinuousCDF, StudentsT};
 use super::difference::{Difference, student_quantile};
 use super::plane::{quadratic_form, scatter};
 use super::resample::Test;
-use super::sample::{Column, Layout};
+use super::sample::{Column, Layout, seconds};
 
 /// The single speaker's deviation and those of the group, and the sign that makes it second less
 /// first.
@@ -37,7 +37,7 @@ fn split(layout: &Layout, column: &Column) -> (f64, Vec<f64>, f64) {
 
 /// The difference in one number.
 pub(super) fn difference(layout: &Layout, column: &Column) -> Difference {
-    let found = column.estimate(layout, &layout.groups);
+    let found = column.estimate(layout, &seconds(&layout.groups));
     let (alone, group, sign) = split(layout, column);
     let n = group.len() as f64;
     let mean = group.iter().sum::<f64>() / n;

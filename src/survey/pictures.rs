@@ -24,10 +24,13 @@ const FRAME_S: f64 = 0.006;
 /// Levels further than this under the loudest are white.
 const RANGE_DB: f64 = 45.0;
 
+/// A token and its track.
+type DrawnToken = (TokenRow, Vec<TrackRow>);
+
 /// The tokens that will be drawn: those with the most doubts, the earlier ones first.
 #[derive(Debug, Default)]
 pub(super) struct Drawn {
-    pub(super) tokens: Vec<(TokenRow, Vec<TrackRow>)>,
+    pub(super) tokens: Vec<DrawnToken>,
 }
 
 impl Drawn {
@@ -60,7 +63,7 @@ pub(super) fn draw(survey: &Survey, drawn: &Drawn) -> BTreeMap<String, Picture> 
         .flat_map(|s| &s.recordings)
         .filter_map(|r| Some((r.name.as_str(), r.path.as_ref()?)))
         .collect();
-    let mut by_recording: BTreeMap<(&str, u16), Vec<&(TokenRow, Vec<TrackRow>)>> = BTreeMap::new();
+    let mut by_recording: BTreeMap<(&str, u16), Vec<&DrawnToken>> = BTreeMap::new();
     for token in &drawn.tokens {
         by_recording
             .entry((&token.0.recording, token.0.channel))
