@@ -22,7 +22,7 @@ const TOKENS: usize = 5;
 const BETWEEN: f64 = 1.0;
 const WITHIN: f64 = 1.0;
 
-fn main() {
+fn main() -> std::process::ExitCode {
     let surveys: u64 = std::env::args()
         .skip(1)
         .find_map(|a| a.parse().ok())
@@ -30,6 +30,7 @@ fn main() {
     println!(
         "{surveys} surveys, {SPEAKERS} + {SPEAKERS} speakers, {VOWELS} vowels, {TOKENS} tokens each"
     );
+    let mut kept = true;
     for shift in [0.0, 0.5, 1.0, 1.5, 2.0] {
         let counts: Vec<Counts> = (0..surveys)
             .into_par_iter()
@@ -37,6 +38,14 @@ fn main() {
             .collect();
         let total = counts.iter().fold(Counts::default(), |a, b| a.plus(b));
         total.print(surveys, shift);
+        kept &= total.keeps_its_word();
+    }
+    if kept {
+        println!("\ntests reject 3.5 to 6.5 % and intervals hold 92 to 97 %: kept");
+        std::process::ExitCode::SUCCESS
+    } else {
+        println!("\ntests reject 3.5 to 6.5 % and intervals hold 92 to 97 %: NOT kept");
+        std::process::ExitCode::FAILURE
     }
 }
 
@@ -68,6 +77,14 @@ impl Counts {
         self.moved_found_after_holm += other.moved_found_after_holm;
         self.moved_covered += other.moved_covered;
         self
+    }
+
+    /// Whether what is said at 5 % and at 95 % happens about as often.
+    fn keeps_its_word(&self) -> bool {
+        let share = |part: u64| 100.0 * part as f64 / self.null_tests as f64;
+        (3.5..=6.5).contains(&share(self.null_rejected))
+            && (3.5..=6.5).contains(&share(self.null_rejected_place))
+            && (92.0..=97.0).contains(&share(self.covered))
     }
 
     fn print(&self, surveys: u64, shift: f64) {

@@ -10,7 +10,7 @@ use super::order::shown;
 pub(super) const WIDTH: f64 = 640.0;
 const HEIGHT: f64 = 500.0;
 /// Room left of and below the plane for the scales.
-const LEFT: f64 = 70.0;
+const LEFT: f64 = 76.0;
 const BELOW: f64 = 46.0;
 const EDGE: f64 = 14.0;
 /// Room around the plane of a drawing without scales: half a symbol.
@@ -186,12 +186,7 @@ fn joined(points: impl Iterator<Item = (f64, f64)>) -> String {
 pub(super) fn shared_plane(findings: &Findings) -> Option<Plane> {
     let all = findings.groups.iter().flatten().chain(&findings.everybody);
     let outlines = all.flat_map(|v| {
-        // Two thirds of the way out, so that most ellipses of tokens fit whole.
-        let inner = v.tokens.spread_ellipse(SHARE).map(|e| Ellipse {
-            along: e.along * 2.0 / 3.0,
-            across: e.across * 2.0 / 3.0,
-            ..e
-        });
+        let inner = v.tokens.spread_ellipse(SHARE);
         let regions = v
             .speakers
             .mean_ellipse(SHARE)
@@ -306,13 +301,17 @@ pub(super) fn chart(
         bottom: HEIGHT - BELOW,
         right: WIDTH - EDGE,
         top: EDGE,
-        f1: inside(0)
-            .map(|s| line(plane.place([s, plane.low[1]]).1, s))
-            .collect(),
+        f1: spaced(
+            inside(0)
+                .map(|s| line(plane.place([s, plane.low[1]]).1, s))
+                .collect(),
+            21.0,
+        ),
         f2: spaced(
             inside(1)
                 .map(|s| line(plane.place([plane.low[0], s]).0, s))
                 .collect(),
+            50.0,
         ),
         name,
         marks,
@@ -322,11 +321,14 @@ pub(super) fn chart(
 }
 
 /// Leaves out steps whose figures would touch, also where they are drawn larger on a small screen.
-fn spaced(lines: Vec<Line>) -> Vec<Line> {
+fn spaced(lines: Vec<Line>, apart: f64) -> Vec<Line> {
     let mut kept: Vec<Line> = Vec::new();
     for line in lines {
         let at = |l: &Line| l.at.parse::<f64>().unwrap_or(0.0);
-        if kept.last().is_none_or(|l| (at(l) - at(&line)).abs() > 50.0) {
+        if kept
+            .last()
+            .is_none_or(|l| (at(l) - at(&line)).abs() > apart)
+        {
             kept.push(line);
         }
     }

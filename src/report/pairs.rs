@@ -13,10 +13,12 @@ const MOST: usize = 10;
 const MOST_GROUPS: usize = 6;
 
 const WIDTH: f64 = 640.0;
-const LEFT: f64 = 200.0;
+const LEFT: f64 = 150.0;
 const RIGHT: f64 = 622.0;
 const ROW: f64 = 26.0;
-const ABOVE: f64 = 26.0;
+/// Height of the line that names a pair.
+const HEADING: f64 = 34.0;
+const ABOVE: f64 = 6.0;
 
 /// The closest pairs, drawn and in figures.
 #[derive(Debug, Clone, Serialize)]
@@ -46,6 +48,8 @@ struct Line {
     mean: String,
     dots: Vec<String>,
     first: bool,
+    /// Where the pair is named.
+    heading: String,
 }
 
 #[derive(Debug, Clone, Serialize)]
@@ -116,7 +120,8 @@ pub(super) fn view(findings: &Findings) -> Option<PairsView> {
     let mut rows = Vec::new();
     let mut y = ABOVE;
     for pair in &pairs {
-        y += 8.0;
+        y += HEADING;
+        let heading = format!("{:.1}", y - HEADING / 2.0 + 2.0);
         for (n, p) in pair.iter().enumerate() {
             y += ROW;
             let group = p.group.map_or_else(
@@ -138,6 +143,7 @@ pub(super) fn view(findings: &Findings) -> Option<PairsView> {
                     .map(|o| x(o.pillai))
                     .collect(),
                 first: n == 0,
+                heading: heading.clone(),
             });
             rows.push(row(findings, p, group));
         }
