@@ -6,7 +6,7 @@ use std::path::PathBuf;
 use super::frame::{Failure, Outcome, Voice};
 use super::table::{ColumnArguments, add_tracks};
 use crate::files;
-use crate::identify::{Identification, Model, identify_with, shipped};
+use crate::identify::{Declined, Identification, Model, identify_with, shipped};
 use crate::tables::IdentifiedCells;
 use crate::tokens::Observation;
 
@@ -83,12 +83,17 @@ fn report(
     voice: &Voice,
 ) -> Outcome {
     let mut declined: BTreeMap<String, usize> = BTreeMap::new();
+    let mut left_out = false;
     let mut answered: BTreeMap<&str, usize> = BTreeMap::new();
     let mut agreeing = 0;
     let mut compared = 0;
     for (observation, answer) in observations.iter().zip(answers) {
         match &answer.ranked {
-            Err(reason) => *declined.entry(reason.to_string()).or_insert(0) += 1,
+            Err(reason) => {
+                *declined.entry(reason.to_string()).or_insert(0) += 1;
+                // That a token is like no vowel of the model is an answer.
+                left_out |= *reason != Declined::UnlikeAny;
+            }
             Ok(ranked) => {
                 *answered.entry(&answer.model).or_insert(0) += 1;
                 let known = |vowel| models.iter().any(|m| m.vowels.contains(vowel));
@@ -120,9 +125,9 @@ fn report(
     for (reason, count) in &declined {
         voice.warning(format!("{count} tokens not identified: {reason}"), None);
     }
-    if declined.is_empty() {
-        Outcome::AllDone
-    } else {
+    if left_out {
         Outcome::SomethingLeftOut
+    } else {
+        Outcome::AllDone
     }
 }
