@@ -6,11 +6,12 @@
 
 use std::collections::BTreeMap;
 
-use crate::norms::{ReferenceRow, ReferenceTable, shipped};
+use crate::norms::ReferenceTable;
 use crate::tokens::Observation;
 use crate::vowel::Vowel;
 
 use super::difference::student_quantile;
+use super::norm_place::{NormVowel, Spread, nearest, norm_affinity, norm_vowels};
 use super::overlap::Overlap;
 use super::pairs::{APART_AFFINITY, FEWEST_TOKENS, Verdict};
 use super::resample::quantile;
@@ -28,16 +29,6 @@ const TELLING_DURATION: f64 = 1.25;
 /// Share of the speaker's vowels that the norm must have too, below which comparison vowel by vowel
 /// is warned of (Disner 1980, JASA 67, 253-261, on different vowel systems).
 const COMMON_SYSTEM: f64 = 0.8;
-
-/// Where the norm's spread comes from.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Spread {
-    /// The table has it.
-    Stated,
-    /// The mean relative spread of the men and women of `hillenbrand-1995-all-tokens`, in place of
-    /// one that was not published.
-    Pooled,
-}
 
 /// A speaker held against a norm.
 #[derive(Debug, Clone, PartialEq)]
@@ -172,15 +163,6 @@ pub struct PairCheck {
     pub norm_affinity: f64,
 }
 
-/// A vowel of a norm: F1 to F3 in ln hertz, spread in ln hertz, duration.
-#[derive(Debug, Clone)]
-struct NormVowel {
-    vowel: Vowel,
-    ln_hz: [Option<f64>; 3],
-    sd: [f64; 3],
-    duration_s: Option<f64>,
-}
-
 /// Holds one speaker's labelled tokens against a norm.
 ///
 /// `None` where the speaker has no vowel in common with it.
@@ -191,7 +173,7 @@ pub fn check(speaker: &str, tokens: &[Observation], norm: &ReferenceTable) -> Op
             by_vowel.entry(vowel).or_default().push(o);
         }
     }
-    let nearest = norm
+    let closest = norm
         .groups()
         .into_iter()
         .filter_map(|group| {
@@ -200,7 +182,7 @@ pub fn check(speaker: &str, tokens: &[Observation], norm: &ReferenceTable) -> Op
             Some((group, vowels, spread, size))
         })
         .min_by(|a, b| a.3.abs().total_cmp(&b.3.abs()))?;
-    let (group, vowels, spread, size) = nearest;
+    let (group, vowels, spread, size) = closest;
     let pace = pace(&by_vowel, &vowels);
     let known: Vec<&NormVowel> = vowels
         .iter()
@@ -231,59 +213,6 @@ pub fn check(speaker: &str, tokens: &[Observation], norm: &ReferenceTable) -> Op
             .map(|v| v.vowel.clone())
             .collect(),
         unknown,
-    })
-}
-
-/// The vowels of one group of a norm, each at its steady state or nearest the middle.
-fn norm_vowels(norm: &ReferenceTable, group: &str) -> (Vec<NormVowel>, Spread) {
-    let mut chosen: Vec<&ReferenceRow> = Vec::new();
-    let from_middle = |row: &ReferenceRow| row.proportion.map_or(0.0, |p| (p - 0.5).abs());
-    for row in norm.rows.iter().filter(|r| r.group == group) {
-        match chosen.iter_mut().find(|c| c.vowel == row.vowel) {
-            Some(known) if from_middle(row) < from_middle(known) => *known = row,
-            Some(_) => {}
-            None => chosen.push(row),
-        }
-    }
-    let stated = chosen
-        .iter()
-        .all(|r| r.sd_hz[0].is_some() && r.sd_hz[1].is_some());
-    let pooled = pooled_spread();
-    let vowels = chosen
-        .into_iter()
-        .map(|row| NormVowel {
-            vowel: row.vowel.clone(),
-            ln_hz: row.formant_hz.map(|f| f.map(f64::ln)),
-            sd: std::array::from_fn(|k| match (row.sd_hz[k], row.formant_hz[k]) {
-                (Some(sd), Some(mean)) if sd > 0.0 => sd / mean,
-                _ => pooled[k],
-            }),
-            duration_s: row.duration_s,
-        })
-        .collect();
-    (
-        vowels,
-        if stated {
-            Spread::Stated
-        } else {
-            Spread::Pooled
-        },
-    )
-}
-
-/// Mean of sd over mean of F1 to F3, over the vowels of the men and women of Hillenbrand et al.
-/// 1995, all tokens. It contains differences of size within each group, so that offsets in this
-/// unit come out a little too small.
-fn pooled_spread() -> [f64; 3] {
-    let table = shipped("hillenbrand-1995-all-tokens");
-    let rows: Vec<ReferenceRow> = table.map(|t| t.rows).unwrap_or_default();
-    std::array::from_fn(|k| {
-        let known: Vec<f64> = rows
-            .iter()
-            .filter(|r| r.group == "men" || r.group == "women")
-            .filter_map(|r| Some(r.sd_hz[k]? / r.formant_hz[k]?))
-            .collect();
-        known.iter().sum::<f64>() / known.len().max(1) as f64
     })
 }
 
@@ -391,31 +320,6 @@ fn vowel_check(
     }
 }
 
-/// The norm's vowel a token is most likely to be: normal distributions round the norm's means,
-/// formants independent, all vowels as probable.
-fn nearest<'a>(o: &Observation, size: f64, all: &'a [NormVowel]) -> Option<&'a Vowel> {
-    let likelihood = |v: &NormVowel| -> f64 {
-        (0..3)
-            .filter_map(|k| {
-                let z = (o.formant_hz[k]?.ln() - size - v.ln_hz[k]?) / v.sd[k];
-                Some(-0.5 * z * z - v.sd[k].ln())
-            })
-            .sum()
-    };
-    // A vowel whose norm lacks F3 would win by having less to explain: only formants all have.
-    let third = all.iter().all(|v| v.ln_hz[2].is_some());
-    let fair = |v: &NormVowel| {
-        let mut v = v.clone();
-        if !third {
-            v.ln_hz[2] = None;
-        }
-        likelihood(&v)
-    };
-    all.iter()
-        .max_by(|a, b| fair(a).total_cmp(&fair(b)))
-        .map(|v| &v.vowel)
-}
-
 /// Pairs the norm keeps apart: those the speaker does not, and those that cannot be told.
 fn pair_checks(
     known: &[&NormVowel],
@@ -462,21 +366,10 @@ fn pair_checks(
     (not_apart, too_few)
 }
 
-/// Affinity of two vowels of the norm, their formants independent.
-fn norm_affinity(a: &NormVowel, b: &NormVowel) -> f64 {
-    let distance: f64 = (0..2)
-        .filter_map(|k| {
-            let variance = 0.5 * (a.sd[k] * a.sd[k] + b.sd[k] * b.sd[k]);
-            let d = b.ln_hz[k]? - a.ln_hz[k]?;
-            Some(d * d / variance / 8.0 + 0.5 * (variance / (a.sd[k] * b.sd[k])).ln())
-        })
-        .sum();
-    (-distance).exp()
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::norms::ReferenceRow;
 
     /// A norm of four vowels with a spread of 8 % in F1 and 6 % in F2, no F3.
     fn norm() -> ReferenceTable {
@@ -601,18 +494,5 @@ mod tests {
         assert_eq!(found.unknown, [(Vowel::from_ipa("ø"), 6)]);
         assert!(!found.systems_differ());
         assert_eq!(check("nobody", &learner(), &norm()), None);
-    }
-
-    #[test]
-    fn a_published_table_without_spread_gets_the_pooled_one() {
-        let spread = pooled_spread();
-        // Means over 24 rows of sd/mean; the printed rows put F1 near 8 %, F2 near 8 %, F3 near 6 %.
-        assert!(
-            spread.iter().all(|s| (0.04..0.12).contains(s)),
-            "{spread:?}"
-        );
-        let table = shipped("hagiwara-1997").unwrap();
-        let (_, spread) = norm_vowels(&table, "women");
-        assert_eq!(spread, Spread::Pooled);
     }
 }

@@ -10,6 +10,7 @@ mod difference;
 mod findings;
 mod holm;
 mod movement;
+mod norm_place;
 mod overlap;
 mod pairs;
 mod panel;
@@ -22,13 +23,14 @@ mod tally;
 
 pub use chart::{GroupVowel, Space, SpeakerVowel, group_vowels, spaces, speaker_vowels};
 pub use check::{
-    NormCheck, Offset, PairCheck, Remark, STRONG_OFFSET, Spread, TELLING_OFFSET, VowelCheck, check,
+    NormCheck, Offset, PairCheck, Remark, STRONG_OFFSET, TELLING_OFFSET, VowelCheck, check,
 };
 pub use contrast::{Contrast, PlaceVerdict, SIGNIFICANCE, VowelContrast, contrast, contrasts};
 pub use difference::{CONFIDENCE, Difference, PlaceTest, differences, mean_interval, place_test};
 pub use findings::Findings;
 pub use holm::holm;
 pub use movement::{MOVEMENT_POINTS, Movement, between, convex_hull, polygon_area};
+pub use norm_place::Spread;
 pub use overlap::{Overlap, expected_pillai_if_merged, pillai_point_if_merged};
 pub use pairs::{APART_AFFINITY, GroupPair, SpeakerPair, Verdict, pairs};
 pub use panel::{Belonging, MEASURES, Measure, Panel, PanelSpeaker, PanelToken};

@@ -18,7 +18,8 @@ pub enum Measure {
     F1,
     /// Normalized F2.
     F2,
-    /// F1 in hertz at the size of the survey's middle speaker.
+    /// F1 in hertz at the size of the survey's middle speaker: only sizes are taken out, see
+    /// [`Panel::gather`].
     F1AtReference,
     /// F2 in hertz at that size.
     F2AtReference,
@@ -147,6 +148,9 @@ pub struct Belonging {
 
 impl Panel {
     /// Sorts the labelled observations of a survey that has been normalized.
+    ///
+    /// Hertz at the reference size are formants less the speaker's size by the regression log-mean,
+    /// whatever the normalization (Barreda & Nearey 2018, JASA 144, 500-520).
     pub fn gather(
         observations: &[Observation],
         normalization: &Normalization,
@@ -266,16 +270,20 @@ struct Reference {
 }
 
 impl Reference {
-    /// Through the run's own normalization where it can be inverted, else through the regression
-    /// log-mean.
+    /// Through the regression log-mean, which takes one factor a speaker out and nothing else: a
+    /// method that also sets each speaker's spread to one, as Lobanov's does, makes a difference of
+    /// one vowel smaller and gives the rest of it to the others, the more so the fewer the vowels
+    /// (Disner 1980, JASA 67, 253-261). Only where a speaker has no vowel in common with the others
+    /// is it the run's own normalization.
     fn of(observations: &[Observation], normalization: &Normalization) -> Self {
-        let own = Self::through(normalization);
-        match &own.middle {
-            Some(middle) if middle.invert_formant(0, 1.0).is_some() => own,
-            _ => Self::through(&Normalization::fit(
-                &Method::RegressionLogMean,
-                observations,
-            )),
+        let sizes = Normalization::fit(&Method::RegressionLogMean, observations);
+        let unplaced = |(name, scale): (&String, &Result<SpeakerScale, _>)| {
+            scale.is_ok() && !sizes.scales.get(name).is_some_and(Result::is_ok)
+        };
+        if normalization.scales.iter().any(unplaced) {
+            Self::through(normalization)
+        } else {
+            Self::through(&sizes)
         }
     }
 
@@ -345,7 +353,7 @@ mod tests {
             vowel: Some(Vowel::from_ipa(vowel)),
             duration_s: Some(0.2),
             f0_hz: None,
-            formant_hz: [Some(f1), Some(f2), Some(2_500.0)],
+            formant_hz: [Some(f1), Some(f2), None],
             sd_hz: [None; 3],
             track: vec![
                 (0.2, [Some(f1), Some(f2), None]),
@@ -379,7 +387,7 @@ mod tests {
             let expected = all
                 .iter()
                 .find(|o| o.speaker == "large" && o.vowel.as_ref() == Some(&panel.vowels[t.vowel]));
-            let [f1, f2, _] = expected.unwrap().formant_hz.map(|f| 1.1 * f.unwrap());
+            let [f1, f2, _] = expected.unwrap().formant_hz.map(|f| 1.1 * f.unwrap_or(0.0));
             let place = t.place_at_reference().unwrap();
             assert!((place[0] - f1).abs() < 1e-6 && (place[1] - f2).abs() < 1e-6);
             // F2 doubles along every vowel.

@@ -81,11 +81,8 @@ struct Row {
 
 /// Every contrast of a survey.
 pub(super) fn views(findings: &Findings) -> Vec<ContrastView> {
-    findings
-        .contrasts
-        .iter()
-        .map(|c| view(findings, c))
-        .collect()
+    let told = findings.contrasts.iter().filter(|c| !c.vowels.is_empty());
+    told.map(|c| view(findings, c)).collect()
 }
 
 fn view(findings: &Findings, contrast: &Contrast) -> ContrastView {

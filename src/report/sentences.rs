@@ -11,6 +11,13 @@ const MOST: usize = 6;
 
 /// What was found, most telling first.
 pub fn found(findings: &Findings) -> Vec<String> {
+    if findings.panel.vowels.is_empty() {
+        return vec![
+            "No token that could be measured carries the label of a vowel, so that nothing is \
+             compared; the table of tokens has what was measured."
+                .to_owned(),
+        ];
+    }
     let mut said = differences(findings);
     said.extend(mergers(findings));
     if said.is_empty() {

@@ -18,6 +18,7 @@
 //! Readers take bytes and give positions; the path is added where the file is opened.
 
 mod cell;
+mod checks;
 mod column;
 mod comparison;
 mod error;
@@ -29,8 +30,9 @@ mod tokens;
 mod tracks;
 
 pub use cell::{decimals, format_number, guard, round_to, unguard};
+pub use checks::checks_table;
 pub use column::{Column, Kind, describe};
-pub use comparison::{checks_table, differences_table, pairs_table, spaces_table, vowels_table};
+pub use comparison::{differences_table, pairs_table, spaces_table, vowels_table};
 pub use error::TableError;
 pub use observations::{ObservationColumns, ObservationTable, UnknownName};
 pub use speakers::SpeakerTable;
